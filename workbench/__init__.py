@@ -1,0 +1,1 @@
+"""Evaluate magnetic alloys by the B-H loops of ring specimens."""

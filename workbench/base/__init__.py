@@ -1,0 +1,1 @@
+"""What is true before any measurement: words, constants, quantities, uncertainty, errors."""

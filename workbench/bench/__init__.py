@@ -1,0 +1,1 @@
+"""The measuring bench: specimens, circuits, cautions, and the forward model from loop to volts."""

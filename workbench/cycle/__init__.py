@@ -1,0 +1,1 @@
+"""From samples to one cycle: fundamental, whole cycles on the phase grid, scatter."""

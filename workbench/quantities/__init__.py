@@ -1,0 +1,1 @@
+"""Numbers with uncertainty, one topic a file; marks; the reduction of one run."""

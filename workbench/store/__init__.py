@@ -1,0 +1,1 @@
+"""Runs, cube and curves on disk: schema, write, open, history, set aside."""

@@ -1,0 +1,1 @@
+"""What leaves the bench: hand-off folder, tables, the opening notebook."""
