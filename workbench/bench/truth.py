@@ -139,7 +139,9 @@ def _half_difference(of: Complexes, at_zeros_of: Complexes) -> float:
     values = []
     for crossing in ((dense >= 0) & (following < 0), (dense < 0) & (following >= 0)):
         place = int(np.flatnonzero(crossing)[0])
-        zero = brentq(lambda phase: _value(at_zeros_of, phase), step * place, step * (place + 1), xtol=1e-14)
+        # A neighbour more on each side: a point that is zero but for rounding may have either sign.
+        bounds = step * (place - 1), step * (place + 2)
+        zero = brentq(lambda phase: _value(at_zeros_of, phase), *bounds, xtol=1e-14)
         values.append(_value(of, zero))
     return (values[0] - values[1]) / 2
 
