@@ -1,0 +1,232 @@
+"""The loops drawn: a family of the specimen in front, and the others at the held setting."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Hashable
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.base.uncertainty import with_uncertainty
+from workbench.views.colours import Look, alloy_looks, strengths
+from workbench.views.derived.index import RunIndex, spelled
+from workbench.views.derived.ticks import AxisPlan, finite_range, symmetric_axis
+from workbench.views.selection import Choice
+
+DISPLAY_POINTS = 160
+MOST_LOOPS = 48
+Drawn = npt.NDArray[np.float32]
+
+
+@dataclass(frozen=True, eq=False)
+class Curve:
+    """One loop for the screen: closed, thinned, in the units of the axes."""
+
+    specimen: str
+    row: int
+    field: Drawn
+    """(point,)"""
+    induction: Drawn
+    look: Look
+
+
+@dataclass(frozen=True, eq=False)
+class LoopFamily:
+    """What the pane of loops shows."""
+
+    key: Hashable
+    """Changes when the family has to be drawn anew."""
+    chosen_key: Hashable
+    """Changes when the loop on top, or those beside it, change."""
+    title: str
+    field_axis: AxisPlan
+    induction_axis: AxisPlan
+    field_label: str
+    look: Look
+    """Of the family."""
+    field: Drawn
+    """(loop, point)"""
+    induction: Drawn
+    strength: npt.NDArray[np.float64]
+    """(loop,) opacity, from weak to strong along the axis."""
+    tip_field: Drawn
+    """(tip,)"""
+    tip_induction: Drawn
+    tip_doubtful: npt.NDArray[np.bool_]
+    tip_choices: tuple[dict[str, Any], ...]
+    """What to choose where a tip is clicked."""
+    ends: tuple[str, ...]
+    """Settings of the first and the last loop, in words."""
+    left_out: int
+    """Loops of the family that were not drawn, to keep it readable."""
+    chosen: Curve | None
+    beside: tuple[Curve, ...]
+    """The other specimens' loops at the held setting."""
+    points: tuple[tuple[float, float], ...]
+    """Remanence and coercivity of the chosen loop, on its axes."""
+    summary: str
+
+
+def thinned(field: npt.ArrayLike, induction: npt.ArrayLike, count: int = DISPLAY_POINTS) -> tuple[Drawn, Drawn]:
+    """A closed loop of at most ``count`` points, evenly spaced along the drawn line.
+
+    Parameters
+    ----------
+    field, induction : array, dims (phase)    one cycle, not closed
+
+    Returns
+    -------
+    two arrays, dims (count,)    samples of the loop: the extremes and the samples on both sides of
+                                 each zero crossing among them; the first is repeated at the end
+
+    Examples
+    --------
+    >>> phase = np.arange(512) * 2 * np.pi / 512
+    >>> h, b = thinned(100 * np.cos(phase), np.sin(phase))
+    >>> len(h), float(h.max()), bool(h[0] == h[-1])
+    (160, 100.0, True)
+    """
+    h, b = np.asarray(field, float), np.asarray(induction, float)
+    if len(h) < count:
+        places = np.arange(len(h))
+    else:
+        must = np.concatenate([[h.argmax(), h.argmin(), b.argmax(), b.argmin()], _crossings(h), _crossings(b)])
+        must = np.unique(must)[: count // 2]
+        steps = np.hypot(np.diff(h) / (np.ptp(h) or 1.0), np.diff(b) / (np.ptp(b) or 1.0))
+        run = np.concatenate([[0.0], np.cumsum(steps)])
+        even = np.searchsorted(run, np.linspace(0.0, run[-1], count - 1 - len(must), endpoint=False))
+        places = np.unique(np.concatenate([must, np.minimum(even, len(h) - 1)]))
+    places = np.append(places, places[0])
+    # Equal lengths, so that a family is one array: the closing point is repeated.
+    places = np.pad(places, (0, max(0, count - len(places))), mode="edge")
+    return h[places].astype(np.float32), b[places].astype(np.float32)
+
+
+def _crossings(values: npt.NDArray[np.float64]) -> npt.NDArray[np.intp]:
+    before = np.flatnonzero(np.signbit(values) != np.signbit(np.roll(values, -1)))
+    return np.concatenate([before, (before + 1) % len(values)])
+
+
+def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
+    """The family of loops along the chosen axis, with the loop of the held setting on top."""
+    looks = alloy_looks(index.alloys)
+    factor, unit, largest_field, largest_induction = _frame(index, choice)
+    steps = _steps(index, choice)
+    members = [(each, index.row(each.front, each.peak, each.frequency, each.temperature)) for each in steps]
+    members = [(each, row) for each, row in members if row >= 0]
+    kept, left_out = _at_most(members, choice)
+    drawn = kept if choice.along != "specimen" else []
+    shapes = [thinned(index.field[row] / factor, index.induction[row]) for _, row in drawn]
+    rows = np.array([row for _, row in kept], dtype=int)
+    chosen = _curve(index, choice, choice.front, factor, looks)
+    beside = (_curve(index, choice, name, factor, looks) for name in choice.specimens if name != choice.front)
+    held = replace(choice, quantity="", **({choice.along: None} if choice.along != "specimen" else {"front": ""}))
+    return LoopFamily(
+        key=(index.token, "loops", held),
+        chosen_key=(index.token, replace(choice, quantity="")),
+        title=_title(index, choice),
+        field_axis=symmetric_axis(largest_field / factor),
+        induction_axis=symmetric_axis(largest_induction),
+        field_label=f"H / {unit}",
+        look=looks[index.alloy_of(choice.front)],
+        field=np.array([h for h, _ in shapes], np.float32).reshape(len(shapes), -1),
+        induction=np.array([b for _, b in shapes], np.float32).reshape(len(shapes), -1),
+        strength=strengths(len(shapes)),
+        tip_field=(index.values("field_tip")[rows] / factor).astype(np.float32),
+        tip_induction=index.values("induction_tip")[rows].astype(np.float32),
+        tip_doubtful=index.doubtful[rows],
+        tip_choices=tuple(_click(each, choice.along) for each, _ in kept),
+        ends=_ends(kept, choice.along, index),
+        left_out=left_out,
+        chosen=chosen,
+        beside=tuple(curve for curve in beside if curve is not None),
+        points=_points(index, chosen, factor),
+        summary=_summary(index, choice, chosen, len(kept), left_out),
+    )
+
+
+def _steps(index: RunIndex, choice: Choice) -> list[Choice]:
+    if choice.along == "specimen":
+        return [replace(choice, front=name) for name in choice.specimens]
+    axes = {"peak": index.peaks, "frequency": index.frequencies, "temperature": index.temperatures}
+    return [replace(choice, **{choice.along: value}) for value in axes[choice.along]]
+
+
+def _at_most(members: list[tuple[Choice, int]], choice: Choice) -> tuple[list[tuple[Choice, int]], int]:
+    """An even share of a large family.
+
+    It does not depend on the member that is chosen, which lies on top anyway: stepping along the
+    family then changes no array.
+    """
+    if len(members) <= MOST_LOOPS:
+        return members, 0
+    places = np.unique(np.linspace(0, len(members) - 1, MOST_LOOPS).round().astype(int))
+    return [members[place] for place in places], len(members) - len(places)
+
+
+def _frame(index: RunIndex, choice: Choice) -> tuple[float, str, float, float]:
+    """Scale of H, its unit, and the largest H and B of the chosen specimens over all their runs.
+
+    Over all frequencies and temperatures, so that stepping never moves the axes.
+    """
+    places = [index.specimen_place(name) for name in choice.specimens]
+    rows = index.rows[places].ravel() if places else np.array([], dtype=int)
+    rows = rows[rows >= 0]
+    _, field = finite_range(index.values("field_tip")[rows])
+    _, induction = finite_range(index.values("induction_tip")[rows])
+    return (1000.0, "kA/m", field, induction) if field >= 10_000 else (1.0, "A/m", field, induction)
+
+
+def _curve(index: RunIndex, choice: Choice, specimen: str, factor: float, looks: dict[str, Look]) -> Curve | None:
+    row = index.row(specimen, choice.peak, choice.frequency, choice.temperature)
+    if row < 0:
+        return None
+    field, induction = thinned(index.field[row] / factor, index.induction[row])
+    return Curve(specimen, row, field, induction, looks[index.alloy_of(specimen)])
+
+
+def _click(step: Choice, along: str) -> dict[str, Any]:
+    return {"front": step.front} if along == "specimen" else {along: getattr(step, along)}
+
+
+def _ends(kept: list[tuple[Choice, int]], along: str, index: RunIndex) -> tuple[str, ...]:
+    if along == "specimen" or not kept:
+        return ()
+    unit = {"peak": "T" if index.peak_name == "peak_induction" else "A/m", "frequency": "Hz", "temperature": "°C"}
+    ends = (kept[0][0], kept[-1][0]) if len(kept) > 1 else (kept[0][0],)
+    return tuple(spelled(getattr(each, along), unit[along]) for each in ends)
+
+
+def _points(index: RunIndex, chosen: Curve | None, factor: float) -> tuple[tuple[float, float], ...]:
+    if chosen is None:
+        return ()
+    coercivity = float(index.values("coercivity")[chosen.row]) / factor
+    remanence = float(index.values("remanence")[chosen.row])
+    pairs = ((0.0, remanence), (coercivity, 0.0))
+    return tuple(pair for pair in pairs if all(math.isfinite(value) for value in pair))
+
+
+def _title(index: RunIndex, choice: Choice) -> str:
+    held = {"peak": choice.peak, "frequency": choice.frequency, "temperature": choice.temperature}
+    unit = {"peak": "T" if index.peak_name == "peak_induction" else "A/m", "frequency": "Hz", "temperature": "°C"}
+    words = [spelled(value, unit[name]) for name, value in held.items() if name != choice.along]
+    who = "chosen specimens" if choice.along == "specimen" else choice.front
+    return f"{who} · {', '.join(words)}"
+
+
+def _summary(index: RunIndex, choice: Choice, chosen: Curve | None, count: int, left_out: int) -> str:
+    loops = "1 loop" if count == 1 else f"{count} loops"
+    if left_out:
+        loops += f" of {count + left_out}"
+    if chosen is None:
+        why = index.why_not(choice.front, choice.peak, choice.frequency, choice.temperature)
+        setting = index.setting(choice.peak, choice.frequency, choice.temperature)
+        return f"{loops}; {choice.front} at {setting}: {why}"
+    said = [
+        f"{symbol} {with_uncertainty(float(index.values(name)[chosen.row]), float(index.values('u_' + name)[chosen.row]), unit)}"
+        for symbol, name, unit in (("Br", "remanence", "T"), ("HcB", "coercivity", "A/m"))
+    ]
+    return f"{loops}; chosen: {'; '.join(said)}"

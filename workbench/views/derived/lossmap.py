@@ -1,0 +1,228 @@
+"""The map of one quantity over frequency and induction reached: a tile a run, holes as holes."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Hashable
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.base.vocabulary import QUANTITIES, label, shown_unit
+from workbench.views.colours import map_colours
+from workbench.views.derived.index import Floats, RunIndex, spelled
+from workbench.views.derived.ticks import AxisPlan, finite_range, linear_axis, log_axis, named_axis
+from workbench.views.selection import Choice
+
+EVEN_RATIO = 6.0
+"""A ladder whose inductions span less than this is drawn on a linear axis."""
+
+
+@dataclass(frozen=True, eq=False)
+class Tiles:
+    """Rectangles of the map, one a setting."""
+
+    x: Floats
+    """(tile, 4) Hz"""
+    y: Floats
+    """(tile, 4) T"""
+    choices: tuple[dict[str, Any], ...]
+    """What to choose where a tile is clicked."""
+
+    def middle(self, place: int, log_y: bool) -> tuple[float, float]:
+        """The middle of a tile as the eye sees it on the axes."""
+        low, high = float(self.y[place].min()), float(self.y[place].max())
+        x = math.sqrt(float(self.x[place].min() * self.x[place].max()))
+        return x, math.sqrt(low * high) if log_y else (low + high) / 2
+
+
+@dataclass(frozen=True, eq=False)
+class LossMap:
+    """What the pane of the map shows."""
+
+    key: Hashable
+    chosen_key: Hashable
+    title: str
+    x_axis: AxisPlan
+    y_axis: AxisPlan
+    x_label: str
+    y_label: str
+    tiles: Tiles
+    values: Floats
+    """(tile,)"""
+    colours: tuple[str, ...]
+    strip: AxisPlan
+    """Limits and ticks of the colour strip."""
+    strip_label: str
+    doubtful: npt.NDArray[np.intp]
+    """Places of the tiles whose run is doubtful."""
+    holes: Tiles
+    hole_texts: tuple[str, ...]
+    """Why there is no figure, one a hole."""
+    outline: tuple[Floats, Floats] | None
+    """Corners of the chosen tile or hole."""
+    summary: str
+
+
+@dataclass(frozen=True)
+class _Place:
+    """One setting of the map: its run, the induction it is drawn at, and why it may be a hole."""
+
+    peak: float | None
+    frequency: float
+    row: int
+    induction: float
+    hole: str
+
+
+def loss_map(index: RunIndex, choice: Choice) -> LossMap:
+    """The quantity of the specimen in front at the held temperature, over frequency and induction reached."""
+    columns = _columns(index, choice)
+    every = [place for column in columns for place in column]
+    low, high = finite_range(np.array([place.induction for place in every]), positive=True)
+    log_y = bool(high / low > EVEN_RATIO) if low > 0 else False
+    edges = _frequency_edges([column[0].frequency for column in columns])
+    boxes = [_boxes(column, edges[number], log_y) for number, column in enumerate(columns)]
+    flat = [(place, box) for column, spans in zip(columns, boxes, strict=True) for place, box in zip(column, spans, strict=True)]
+    good = [(place, box) for place, box in flat if not place.hole]
+    bad = [(place, box) for place, box in flat if place.hole]
+    values = index.values(choice.quantity)[[place.row for place, _ in good]]
+    strip = _strip(index, choice)
+    at = [box for place, box in flat if (place.peak, place.frequency) == (choice.peak, choice.frequency)]
+    word = QUANTITIES[choice.quantity]
+    doubtful = index.doubtful[[place.row for place, _ in good]]
+    return LossMap(
+        key=(index.token, "map", choice.front, choice.temperature, choice.quantity),
+        chosen_key=(index.token, choice.front, choice.peak, choice.frequency, choice.temperature),
+        title=f"{choice.front} · {spelled(choice.temperature, '°C')}",
+        x_axis=_frequency_axis([column[0].frequency for column in columns], edges),
+        y_axis=_induction_axis([box for _, box in flat], log_y),
+        x_label="f set / Hz",
+        y_label=label("induction_tip"),
+        tiles=_tiles(good),
+        values=values,
+        colours=tuple(map_colours(_places_on(strip, values))),
+        strip=strip,
+        strip_label=f"{word.symbol} / {shown_unit(word.unit)}" if shown_unit(word.unit) else word.symbol,
+        doubtful=np.flatnonzero(doubtful),
+        holes=_tiles(bad),
+        hole_texts=tuple(place.hole for place, _ in bad),
+        outline=_corners(at[0]) if at else None,
+        summary=_summary(choice, good, values, bad),
+    )
+
+
+def _columns(index: RunIndex, choice: Choice) -> list[list[_Place]]:
+    """Per frequency the settings of the ladder with an induction to draw them at, lowest first."""
+    peaks, frequencies, _ = index.ladder(choice.front)
+    quantity, reached = index.values(choice.quantity), index.values("induction_tip")
+    positive = [frequency for frequency in frequencies if frequency is not None and frequency > 0]
+    rows = {
+        (peak, frequency): index.row(choice.front, peak, frequency, choice.temperature)
+        for peak in peaks
+        for frequency in positive
+    }
+    columns = []
+    for frequency in positive:
+        column = []
+        for peak in peaks:
+            row = rows[peak, frequency]
+            induction = reached[row] if row >= 0 else math.nan
+            if row < 0:
+                hole = index.why_not(choice.front, peak, frequency, choice.temperature)
+            else:
+                hole = "" if math.isfinite(quantity[row]) and induction > 0 else "not computable"
+            if not induction > 0:
+                induction = _guessed(frequency, positive, [rows[peak, each] for each in positive], reached)
+            column.append(_Place(peak, frequency, row, induction, hole))
+        # Settings at which no frequency has a run cannot be placed and are counted nowhere.
+        columns.append(sorted((place for place in column if place.induction > 0), key=lambda place: place.induction))
+    return [column for column in columns if column]
+
+
+def _guessed(frequency: float, frequencies: list[float], rows: list[int], reached: Floats) -> float:
+    """Where to draw a hole: at the induction that the same peak reaches at the nearest frequencies."""
+    pairs = [(math.log(each), reached[row]) for each, row in zip(frequencies, rows, strict=True) if row >= 0 and reached[row] > 0]
+    if not pairs:
+        return math.nan
+    x, y = zip(*pairs, strict=True)
+    return float(np.interp(math.log(frequency), x, y))
+
+
+def _frequency_edges(frequencies: list[float]) -> list[tuple[float, float]]:
+    cuts = [math.sqrt(low * high) for low, high in zip(frequencies, frequencies[1:], strict=False)]
+    if not cuts:
+        return [(frequency / 1.5, frequency * 1.5) for frequency in frequencies]
+    first, last = frequencies[0] ** 2 / cuts[0], frequencies[-1] ** 2 / cuts[-1]
+    ends = [first, *cuts, last]
+    return list(zip(ends, ends[1:], strict=False))
+
+
+def _boxes(column: list[_Place], edge: tuple[float, float], log_y: bool) -> list[tuple[float, float, float, float]]:
+    """(left, right, bottom, top) of each setting of a column: halfway to its neighbours."""
+    at = np.array([place.induction for place in column])
+    scaled = np.log(at) if log_y else at
+    if len(scaled) > 1:
+        cuts = (scaled[:-1] + scaled[1:]) / 2
+        ends = np.concatenate([[2 * scaled[0] - cuts[0]], cuts, [2 * scaled[-1] - cuts[-1]]])
+    else:
+        reach = math.log(1.15) if log_y else 0.1 * scaled[0]
+        ends = np.array([scaled[0] - reach, scaled[0] + reach])
+    ends = np.exp(ends) if log_y else np.maximum(ends, 0.0)
+    return [(edge[0], edge[1], float(low), float(high)) for low, high in zip(ends[:-1], ends[1:], strict=True)]
+
+
+def _corners(box: tuple[float, float, float, float]) -> tuple[Floats, Floats]:
+    left, right, low, high = box
+    return np.array([left, right, right, left]), np.array([low, low, high, high])
+
+
+def _tiles(places: list[tuple[_Place, tuple[float, float, float, float]]]) -> Tiles:
+    corners = [_corners(box) for _, box in places]
+    return Tiles(
+        x=np.array([x for x, _ in corners]).reshape(-1, 4),
+        y=np.array([y for _, y in corners]).reshape(-1, 4),
+        choices=tuple({"peak": place.peak, "frequency": place.frequency} for place, _ in places),
+    )
+
+
+def _frequency_axis(frequencies: list[float], edges: list[tuple[float, float]]) -> AxisPlan:
+    return named_axis(edges[0][0], edges[-1][1], frequencies) if edges else log_axis(math.nan, math.nan)
+
+
+def _induction_axis(boxes: list[tuple[float, float, float, float]], log_y: bool) -> AxisPlan:
+    low = min((box[2] for box in boxes), default=math.nan)
+    high = max((box[3] for box in boxes), default=math.nan)
+    return log_axis(low, high) if log_y else linear_axis(low, high)
+
+
+def _strip(index: RunIndex, choice: Choice) -> AxisPlan:
+    """Limits of the colours: over all temperatures of the specimen, so that a colour keeps its meaning."""
+    place = index.specimen_place(choice.front)
+    rows = index.rows[place].ravel() if place is not None else np.array([], dtype=int)
+    values = index.values(choice.quantity)[rows[rows >= 0]]
+    low, high = finite_range(values)
+    if low > 0 and high / low > 5:
+        return log_axis(low, high, most=5)
+    return linear_axis(low, high)
+
+
+def _places_on(strip: AxisPlan, values: Floats) -> Floats:
+    if strip.log:
+        return np.asarray(np.log(np.maximum(values, 1e-300) / strip.low) / math.log(strip.high / strip.low))
+    return np.asarray((values - strip.low) / (strip.high - strip.low))
+
+
+def _summary(choice: Choice, good: list[Any], values: Floats, bad: list[Any]) -> str:
+    kinds: dict[str, int] = {}
+    for place, _ in bad:
+        kinds[place.hole] = kinds.get(place.hole, 0) + 1
+    tail = "".join(f"; {count} × {kind}" for kind, count in kinds.items())
+    if not len(values):
+        return f"no figure of {QUANTITIES[choice.quantity].symbol} to show{tail}"
+    word = QUANTITIES[choice.quantity]
+    unit = f" {shown_unit(word.unit)}" if shown_unit(word.unit) else ""
+    lowest, highest = float(values.min()), float(values.max())
+    return f"{len(good)} runs; {word.symbol} {lowest:.3g} to {highest:.3g}{unit}{tail}"

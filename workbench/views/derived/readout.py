@@ -1,0 +1,202 @@
+"""The figures of the chosen setting, one column a specimen, and the store at a glance."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Hashable, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+import xarray as xr
+
+from workbench.base.uncertainty import with_uncertainty
+from workbench.base.vocabulary import QUANTITIES, shown_unit
+from workbench.quantities.mark_table import MARKS, marks_of
+from workbench.views.derived.index import RunIndex, StoreLike
+from workbench.views.derived.loops import LoopFamily
+from workbench.views.selection import Choice
+
+MOST_COLUMNS = 6
+MOST_LISTED = 200
+
+
+@dataclass(frozen=True)
+class Column:
+    """One specimen of the readout: texts only, unescaped."""
+
+    specimen: str
+    alloy: str
+    in_front: bool
+    figures: tuple[str, ...]
+    """``value ± U`` (k = 2) without unit, one a row."""
+    doubts: tuple[str, ...]
+    """Marks of weight doubt, in words."""
+    notes: tuple[str, ...]
+    standing: str
+    remark: str
+    capture: str
+    repeats: str
+
+
+@dataclass(frozen=True)
+class Readout:
+    """The table under the panes."""
+
+    key: Hashable
+    title: str
+    rows: tuple[tuple[str, str, str], ...]
+    """(symbol, unit, meaning) of each row of figures."""
+    columns: tuple[Column, ...]
+    left_out: int
+
+
+@dataclass(frozen=True)
+class Overview:
+    """The store at a glance, for the header."""
+
+    title: str
+    line: str
+    doubtful: tuple[str, ...]
+    set_aside: tuple[str, ...]
+    failed: tuple[str, ...]
+    cautions: tuple[str, ...]
+
+
+def readout(index: RunIndex, choice: Choice) -> Readout:
+    """The figures of every chosen specimen at the held setting, the one in front first."""
+    names = [choice.front, *(name for name in choice.specimens if name != choice.front)] if choice.front else []
+    shown = names[:MOST_COLUMNS]
+    return Readout(
+        key=(index.token, "readout", choice.specimens, choice.front, choice.peak, choice.frequency, choice.temperature),
+        title=index.setting(choice.peak, choice.frequency, choice.temperature),
+        rows=tuple((word.symbol, shown_unit(word.unit), word.meaning) for word in QUANTITIES.values()),
+        columns=tuple(_column(index, choice, name) for name in shown),
+        left_out=len(names) - len(shown),
+    )
+
+
+def _column(index: RunIndex, choice: Choice, specimen: str) -> Column:
+    held = (choice.peak, choice.frequency, choice.temperature)
+    row = index.row(specimen, *held)
+    alloy, front = index.alloy_of(specimen), specimen == choice.front
+    if row < 0:
+        blank = ("",) * len(QUANTITIES)
+        return Column(specimen, alloy, front, blank, (), (), index.why_not(specimen, *held), "", "", "")
+    marks = [mark for mark in marks_of(int(index.text_at("marks", row) or 0))]
+    seen = _seen(index.text_at("seen", row))
+    return Column(
+        specimen=specimen,
+        alloy=alloy,
+        in_front=front,
+        figures=tuple(_figure(index, name, row) for name in QUANTITIES),
+        doubts=tuple(_said(mark, seen) for mark in marks if MARKS[mark].weight == "doubt"),
+        notes=tuple(_said(mark, seen) for mark in marks if MARKS[mark].weight == "note"),
+        standing=_standing(index, row),
+        remark=index.text_at("remark", row),
+        capture=index.text_at("capture", row),
+        repeats=index.text_at("repeat", row),
+    )
+
+
+def _figure(index: RunIndex, name: str, row: int) -> str:
+    return with_uncertainty(float(index.values(name)[row]), float(index.values("u_" + name)[row]))
+
+
+def _seen(text: str) -> dict[str, str]:
+    """Sentences of the marks by the mark's name, where a line begins with it."""
+    found = {}
+    for line in text.splitlines():
+        head, colon, tail = line.partition(":")
+        if colon and head.strip() in MARKS:
+            found[head.strip()] = tail.strip()
+    return found
+
+
+def _said(mark: str, seen: Mapping[str, str]) -> str:
+    return f"{mark}: {seen.get(mark) or MARKS[mark].meaning}"
+
+
+def _standing(index: RunIndex, row: int) -> str:
+    standing, reason = index.text_at("standing", row), index.text_at("reason", row)
+    return f"{standing}: {reason}" if reason else standing
+
+
+def overview(store: StoreLike, index: RunIndex) -> Overview:
+    """Counts of what is doubtful, set aside, failed or missing, with the lists behind them."""
+    runs, failures = index.runs, store.failures
+    aside = np.asarray(runs["standing"].values) == "set aside"
+    failed = [f"{row.capture}: {row.reason}. {row.remedy}" for row in failures.itertuples()]
+    loops = index.rows >= 0
+    missing = int((index.hidden[loops.any(axis=(1, 2, 3))] < 0).sum()) if loops.any() else 0
+    doubtful = np.flatnonzero(index.doubtful & ~aside)
+    count = runs.sizes["run"]
+    line = f"{count} run{'s' if count != 1 else ''} of {len(index.specimens)} specimens"
+    if missing:
+        line += f" · {missing} settings without a run"
+    return Overview(
+        title=index.title,
+        line=line,
+        doubtful=_listed(runs, doubtful, index),
+        set_aside=_listed(runs, np.flatnonzero(aside), index),
+        failed=tuple(failed),
+        cautions=_cautions(runs),
+    )
+
+
+def _listed(runs: xr.Dataset, rows: Any, index: RunIndex) -> tuple[str, ...]:
+    lines = []
+    for row in rows:
+        why = [mark for mark in marks_of(int(index.text_at("marks", row) or 0)) if MARKS[mark].weight == "doubt"]
+        reason = index.text_at("reason", row)
+        lines.append(f"{index.text_at('specimen', row)} · {index.text_at('capture', row)}: {reason or ', '.join(why)}")
+    return tuple(lines)
+
+
+def _cautions(runs: xr.Dataset) -> tuple[str, ...]:
+    if "cautions" not in runs.coords:
+        return ()
+    lines = (line.strip() for text in set(runs["cautions"].values) for line in str(text).splitlines())
+    return tuple(sorted({line for line in lines if line}))
+
+
+def status_sentence(index: RunIndex, choice: Choice) -> str:
+    """One plain sentence about what is in view, or why there is nothing.
+
+    Examples
+    --------
+    >>> status_sentence.__name__
+    'status_sentence'
+    """
+    if not index.specimens:
+        return "This store holds no loops yet: reduce a campaign into it."
+    if not choice.specimens:
+        return "No specimen is chosen: choose at least one in the list. The last picture stays."
+    setting = index.setting(choice.peak, choice.frequency, choice.temperature)
+    row = index.row(choice.front, choice.peak, choice.frequency, choice.temperature)
+    if row < 0:
+        why = index.why_not(choice.front, choice.peak, choice.frequency, choice.temperature)
+        said = {"no run": "there is no run at this setting", "set aside": "the run at this setting is set aside"}[why]
+        return f"{choice.front} at {setting}: {said}; its figures are left empty."
+    if not any(math.isfinite(index.values(name)[row]) for name in QUANTITIES):
+        return f"{choice.front} at {setting}: none of its figures is computable."
+    if int((index.rows >= 0).sum()) == 1:
+        return f"{choice.front} at {setting}: the only run in this store."
+    place = index.specimen_place(choice.front)
+    rows = index.rows[place] if place is not None else index.rows
+    if not np.isfinite(index.values(choice.quantity)[rows[rows >= 0]]).any():
+        return f"{choice.front}: {QUANTITIES[choice.quantity].symbol} is computable at no setting; choose another quantity."
+    doubt = " This run is doubtful, see its marks." if index.doubtful[row] else ""
+    return f"{choice.front} at {setting}.{doubt}"
+
+
+def slice_in_view(index: RunIndex, choice: Choice, family: LoopFamily) -> xr.Dataset:
+    """The runs whose loops are in view, as a Dataset of dim run."""
+    rows = {index.row(each.get("front", choice.front), **_held(choice, each)) for each in family.tip_choices}
+    rows |= {curve.row for curve in family.beside}
+    return index.runs.isel(run=sorted(row for row in rows if row >= 0))
+
+
+def _held(choice: Choice, changes: Mapping[str, Any]) -> dict[str, Any]:
+    names = ("peak", "frequency", "temperature")
+    return {name: changes.get(name, getattr(choice, name)) for name in names}

@@ -1,0 +1,121 @@
+"""Limits and ticks of an axis: few, round, and written as people write them."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+_SUPERSCRIPTS = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
+
+
+@dataclass(frozen=True)
+class AxisPlan:
+    """Limits, ticks and their texts; ``log`` says how distances run."""
+
+    low: float
+    high: float
+    ticks: tuple[float, ...]
+    texts: tuple[str, ...]
+    log: bool = False
+
+
+def symmetric_axis(largest: float) -> AxisPlan:
+    """A linear axis from -limit to +limit with a little room beyond the largest value.
+
+    Examples
+    --------
+    >>> symmetric_axis(1.43).ticks
+    (-1.0, 0.0, 1.0)
+    >>> symmetric_axis(930.0).ticks
+    (-500.0, 0.0, 500.0)
+    """
+    largest = largest if math.isfinite(largest) and largest > 0 else 1.0
+    limit = 1.06 * largest
+    step = _step(limit, 2.6)
+    count = math.floor(limit / step)
+    ticks = tuple(float(f"{place * step:.12g}") for place in range(-count, count + 1))
+    return AxisPlan(-limit, limit, ticks, tuple(written(tick) for tick in ticks))
+
+
+def linear_axis(low: float, high: float) -> AxisPlan:
+    """A linear axis with four to six round ticks.
+
+    Examples
+    --------
+    >>> linear_axis(0.0, 1.7).ticks
+    (0.0, 0.5, 1.0, 1.5)
+    """
+    if not (math.isfinite(low) and math.isfinite(high)) or low == high:
+        middle = low if math.isfinite(low) else 0.0
+        low, high = middle - (abs(middle) * 0.1 or 1.0), middle + (abs(middle) * 0.1 or 1.0)
+    step = _step(high - low, 5.0)
+    first, last = math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9)
+    ticks = tuple(float(f"{place * step:.12g}") for place in range(first, last + 1))
+    return AxisPlan(low, high, ticks, tuple(written(tick) for tick in ticks))
+
+
+def log_axis(low: float, high: float, most: int = 6) -> AxisPlan:
+    """A logarithmic axis: ticks at 1-2-5, at 1-3, or at whole decades, as many as read well.
+
+    Examples
+    --------
+    >>> log_axis(40.0, 900.0).texts
+    ('50', '100', '200', '500')
+    >>> log_axis(1.0, 1e5).texts
+    ('1', '10', '100', '1 000', '10⁴', '10⁵')
+    """
+    if not (0 < low < math.inf and 0 < high < math.inf):
+        low, high = 0.1, 10.0
+    if high < low * 1.05:
+        low, high = low / 1.5, high * 1.5
+    decades = range(math.floor(math.log10(low)), math.ceil(math.log10(high)) + 1)
+    for leading in ((1, 1.5, 2, 3, 5, 7), (1, 2, 5), (1, 3), (1,)):
+        ticks = [lead * 10.0**decade for decade in decades for lead in leading]
+        ticks = [tick for tick in ticks if low * (1 - 1e-9) <= tick <= high * (1 + 1e-9)]
+        if len(ticks) <= most:
+            break
+    ticks = ticks[:: math.ceil(len(ticks) / most)] if len(ticks) > most else ticks
+    ticks = ticks or [math.sqrt(low * high)]
+    return AxisPlan(low, high, tuple(ticks), tuple(written(tick) for tick in ticks), log=True)
+
+
+def named_axis(low: float, high: float, values: Sequence[float], most: int = 6) -> AxisPlan:
+    """A logarithmic axis whose ticks are the settings themselves, thinned to the most that fit."""
+    every = math.ceil(len(values) / most) if values else 1
+    kept = tuple(float(value) for value in values[::every])
+    return AxisPlan(low, high, kept, tuple(written(value) for value in kept), log=True)
+
+
+def written(value: float) -> str:
+    """A tick's text: three digits, thin spaces in thousands, powers of ten beyond.
+
+    Examples
+    --------
+    >>> written(0.05), written(2500.0), written(20000.0), written(-1.5)
+    ('0.05', '2 500', '2·10⁴', '−1.5')
+    """
+    if value == 0:
+        return "0"
+    exponent = math.floor(math.log10(abs(value)) + 1e-12)
+    if exponent >= 4 or exponent <= -4:
+        lead = f"{value / 10.0**exponent:.3g}".replace("-", "−")
+        power = f"10{str(exponent).translate(_SUPERSCRIPTS)}"
+        return power if lead == "1" else f"{lead}·{power}"
+    return f"{value:,.4g}".replace(",", " ").replace("-", "−") if exponent < 3 else f"{value:,.0f}".replace(
+        ",", " "
+    ).replace("-", "−")
+
+
+def _step(span: float, wanted: float) -> float:
+    rough = span / wanted
+    scale = 10.0 ** math.floor(math.log10(rough))
+    return float(min((1, 2, 2.5, 5, 10), key=lambda lead: abs(math.log(lead * scale / rough))) * scale)
+
+
+def finite_range(values: np.ndarray, positive: bool = False) -> tuple[float, float]:
+    """Smallest and largest finite (and positive) value; NaN, NaN where there is none."""
+    good = np.isfinite(values) & (values > 0) if positive else np.isfinite(values)
+    return (float(values[good].min()), float(values[good].max())) if good.any() else (math.nan, math.nan)
