@@ -1,0 +1,247 @@
+"""A record becomes one cycle: its frequency, its harmonics, its noise."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.base.errors import CaptureError
+from workbench.cycle.fundamental import ENOUGH_CYCLES, coarse_frequency, fine_frequency
+from workbench.cycle.least_squares import best_frequency, fit_harmonics
+from workbench.cycle.scatter import FEWEST_WINDOWS, Scale, window_harmonics, window_layout, window_scale
+from workbench.cycle.spread import harmonic_sums, periodic
+from workbench.cycle.taper import order_for, taper
+
+Floats = npt.NDArray[np.float64]
+Complexes = npt.NDArray[np.complex128]
+
+HIGHEST_HARMONIC = 255
+"""A stored loop has 512 points: it cannot hold more."""
+FEWEST_SAMPLES = 8
+"""Samples a cycle below which not even the third harmonic is safe from the sampling."""
+_POINTS_KEPT = 640
+"""Samples a cycle to which a denser record is averaged down before it is folded."""
+_ONE_CYCLE = 1.1
+"""Up to here a record is taken as one cycle whose ends are brought together."""
+_SEARCH_POINTS = 160
+"""Samples a cycle that suffice to find the period."""
+_LEAST_SQUARES_BELOW = 6
+_SIGNIFICANT = 5.0
+"""A harmonic counts above this multiple of its noise: one in 270,000 does so by chance."""
+
+
+@dataclass(frozen=True)
+class Waveform:
+    """One mean cycle of both channels (field first, induction second), in recorded units."""
+
+    frequency: float
+    """Hz"""
+    cycles: float
+    """Cycles in the record, whole or not."""
+    samples_per_cycle: float
+    harmonics: Complexes
+    """(channel, K) two-sided amplitudes of k = 1 … K; harmonics lost in noise are zero."""
+    noise: Floats
+    """(channel,) standard deviation of one recorded sample."""
+    harmonic_noise: Floats
+    """(channel,) rms of the noise of a complex harmonic."""
+    levels: Floats
+    """(channel, cycle) mean of each whole cycle: offset and drift."""
+    end_gap: Floats
+    """(channel,) last minus first value of a one-cycle record, taken out as a straight line; else 0."""
+    kept: npt.NDArray[np.intp]
+    """(channel,) highest harmonic above the noise."""
+    windows: Windows | None
+    """How to look at the scatter between cycles; None where there are too few."""
+
+
+@dataclass(frozen=True)
+class Windows:
+    """The samples cut into overlapping windows of whole cycles; worked out only when asked for."""
+
+    samples: Floats
+    position: Floats
+    cycles: int
+    response: Floats
+    """(K,) of the averaging of samples, divided out."""
+    scale: Scale
+
+    def harmonics(self) -> Complexes:
+        """Amplitudes of each window, dims (window, channel, K)."""
+        highest = len(self.response)
+        return window_harmonics(self.samples, self.position, self.cycles, highest) / self.response
+
+
+def mean_cycle(samples: Floats, sample_rate: float, expected: float) -> Waveform:
+    """Find the period and the mean cycle of a two-channel record.
+
+    Parameters
+    ----------
+    samples : array, dims (channel, sample)    recorded units, channels field and induction
+    sample_rate : float, Hz
+    expected : float, Hz                       the setting; the record's own frequency is found
+
+    Returns
+    -------
+    Waveform
+
+    Raises
+    ------
+    CaptureError    shorter than a cycle, too few samples a cycle, no steady frequency
+
+    Notes
+    -----
+    From six cycles on: whole cycles under a taper whose spectrum vanishes at every harmonic, so that
+    offset and drift leave no trace.  Below six: least squares on all harmonics.  One cycle: its
+    ends are brought together by a straight line.
+
+    Examples
+    --------
+    >>> t = np.arange(20_000) / 1e6
+    >>> wave = np.stack([np.cos(2 * np.pi * 618.5 * t), 3 * np.sin(2 * np.pi * 618.5 * t)])
+    >>> found = mean_cycle(wave, 1e6, 600.0)
+    >>> round(found.frequency, 4), abs(found.harmonics[:, 0]).round(6).tolist()
+    (618.5, [0.5, 1.5])
+    """
+    end_gap = np.zeros(2)
+    single = _one_cycle_length(samples, expected / sample_rate)
+    if single is not None:
+        samples, end_gap = _ends_joined(samples[:, : round(1 / single)])
+    per_sample = single if single is not None else _cycles_per_sample(samples, expected / sample_rate)
+    per_cycle = 1 / per_sample
+    if per_cycle < FEWEST_SAMPLES:
+        raise CaptureError(
+            f"only {per_cycle:.1f} samples a cycle, wanted at least {FEWEST_SAMPLES}",
+            "Raise the sampling rate.",
+        )
+    total = samples.shape[1] * per_sample
+    factor = max(1, int(per_cycle / _POINTS_KEPT))
+    averaged = _block_means(samples, factor)
+    position: Floats = (np.arange(averaged.shape[1], dtype=float) * factor + (factor - 1) / 2) * per_sample
+    highest = min(HIGHEST_HARMONIC, int(0.45 * per_cycle / factor))
+    response = _block_response(factor, per_sample, highest)
+    folded, weight_variance = _fold(averaged, position, total, highest)
+    noise = _sample_noise(averaged, folded, position)
+    harmonic_noise = noise * np.sqrt(weight_variance)
+    kept = _kept_harmonics(folded, harmonic_noise)
+    harmonics = np.where(np.arange(1, highest + 1) <= kept[:, None], folded / response, 0)
+    cycles = whole_cycles(total)
+    return Waveform(
+        frequency=per_sample * sample_rate, cycles=total, samples_per_cycle=per_cycle,
+        harmonics=harmonics, noise=noise * np.sqrt(factor), harmonic_noise=harmonic_noise,
+        levels=_cycle_means(averaged, position, cycles), end_gap=end_gap, kept=kept,
+        windows=_windows(averaged, position, cycles, response),
+    )  # fmt: skip
+
+
+def whole_cycles(total: float) -> int:
+    """Whole cycles in a record; a record cut at exactly n cycles counts n, rounding aside."""
+    return int(total + 1e-3)
+
+
+def _cycles_per_sample(samples: Floats, expected: float) -> float:
+    count = samples.shape[1]
+    if count * expected < 0.98:
+        raise CaptureError(
+            f"the record holds {count * expected:.2f} of a cycle at the setting's frequency, wanted at least one",
+            "Record longer, or correct the frequency in runs.csv.",
+        )
+    # The period needs few points a cycle; means of blocks are as long and no noisier in all.
+    factor = max(1, int(1 / (_SEARCH_POINTS * expected)))
+    blocks, expected = _block_means(samples, factor), expected * factor
+    start = coarse_frequency(blocks, expected) if count * expected >= ENOUGH_CYCLES * factor else expected
+    if whole_cycles(blocks.shape[1] * start) >= ENOUGH_CYCLES:
+        return fine_frequency(blocks, start) / factor
+    return best_frequency(blocks, start, with_drift=blocks.shape[1] * start > 1.5) / factor
+
+
+def _ends_joined(samples: Floats) -> tuple[Floats, Floats]:
+    """A one-cycle record without the step between its end and its beginning, and that step."""
+    count = samples.shape[1]
+    few = max(3, count // 200)
+    # End and beginning side by side follow one straight line but for the step between them.
+    side_by_side = np.concatenate([samples[:, -few:], samples[:, :few]], axis=1)
+    place = np.arange(-few, few) + 0.5
+    design = np.stack([np.ones(2 * few), place, place > 0], axis=1)
+    gap = -np.linalg.lstsq(design, side_by_side.T, rcond=None)[0][2]
+    return samples - gap[:, None] * ((np.arange(count) + 0.5) / count - 0.5), gap
+
+
+def _one_cycle_length(samples: Floats, expected: float) -> float | None:
+    """Cycles per sample of a record that is one cycle, or None if it is longer or shorter.
+
+    The whole record is the cycle, or the part that the setting's frequency says, whichever closes
+    better.
+    """
+    count = samples.shape[1]
+    if not 0.98 <= count * expected < _ONE_CYCLE:
+        return None
+    whole = 1 / count
+    if expected <= whole:
+        return whole
+    size = samples.std(axis=1)
+    gaps = [np.abs(_ends_joined(samples[:, : round(1 / f)])[1] / size).max() for f in (whole, expected)]
+    return whole if gaps[0] <= gaps[1] else expected
+
+
+def _block_means(samples: Floats, factor: int) -> Floats:
+    if factor == 1:
+        return samples
+    count = samples.shape[1] // factor
+    return samples[:, : count * factor].reshape(len(samples), count, factor).mean(axis=2)
+
+
+def _block_response(factor: int, per_sample: float, highest: int) -> Floats:
+    """Response of the mean of `factor` samples at each harmonic, dims (K)."""
+    turn = np.pi * per_sample * np.arange(1, highest + 1)
+    return np.asarray(np.sin(factor * turn) / (factor * np.sin(turn)))
+
+
+def _fold(samples: Floats, position: Floats, total: float, highest: int) -> tuple[Complexes, float]:
+    """Amplitudes, and the variance of one for unit variance of a sample."""
+    cycles = whole_cycles(total)
+    if cycles < _LEAST_SQUARES_BELOW:
+        # Over one cycle a straight line is itself a sum of harmonics: it cannot be told apart.
+        return fit_harmonics(samples, position, highest, with_drift=total > 1.5), 1 / samples.shape[1]
+    weight = taper(position, cycles, order_for(cycles))
+    sums = harmonic_sums(samples * weight, position, highest)
+    return sums[:, 1:] / weight.sum(), float(np.sum(weight**2) / weight.sum() ** 2)
+
+
+def _sample_noise(samples: Floats, folded: Complexes, position: Floats) -> Floats:
+    """Standard deviation of what the mean cycle leaves, dims (channel)."""
+    rest = samples - periodic(folded, position)
+    # Differences do not see offset and drift; the periodic part took one value a harmonic away.
+    share = 1 - min(0.9, 2 * folded.shape[1] / samples.shape[1])
+    return np.asarray(np.std(np.diff(rest, axis=1), axis=1) / np.sqrt(2 * share))
+
+
+def _kept_harmonics(folded: Complexes, harmonic_noise: Floats) -> npt.NDArray[np.intp]:
+    """Half again the highest harmonic that stands out of the noise, per channel."""
+    clear = np.abs(folded) > _SIGNIFICANT * harmonic_noise[:, None]
+    last = folded.shape[1] - np.argmax(clear[:, ::-1], axis=1)
+    last = np.where(clear.any(axis=1), last, 1)
+    return np.minimum(folded.shape[1], np.maximum(last * 3 // 2, 11))
+
+
+def _cycle_means(samples: Floats, position: Floats, cycles: int) -> Floats:
+    """Mean of each whole cycle, dims (channel, cycle)."""
+    if cycles < 1:
+        return samples.mean(axis=1, keepdims=True)
+    edges = np.searchsorted(position, np.arange(cycles))
+    ends = np.append(edges[1:], np.searchsorted(position, cycles))
+    return np.add.reduceat(samples[:, : ends[-1]], edges, axis=1) / (ends - edges)
+
+
+@lru_cache(maxsize=256)
+def _scale(cycles: int) -> Scale:
+    return window_scale(cycles, order_for(cycles))
+
+
+def _windows(samples: Floats, position: Floats, cycles: int, response: Floats) -> Windows | None:
+    if cycles < 2 or window_layout(cycles)[1] < FEWEST_WINDOWS:
+        return None
+    return Windows(samples, position, cycles, response, _scale(cycles))

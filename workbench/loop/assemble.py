@@ -1,0 +1,98 @@
+"""A record becomes a closed loop of H and B on the phase grid."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.base.errors import CaptureError
+from workbench.bench.circuit import Circuit
+from workbench.bench.specimen import Specimen
+from workbench.capture.record import Record
+from workbench.cycle.spread import on_phase
+from workbench.cycle.waveform import Waveform, mean_cycle
+from workbench.loop.undo import Harmonics, Setup, nominal_inputs, scaled_unit, undo
+
+Floats = npt.NDArray[np.float64]
+Complexes = npt.NDArray[np.complex128]
+
+
+@dataclass(frozen=True)
+class Loop:
+    """One run's loop in harmonics, with the waveform and the setup it came from."""
+
+    waveform: Waveform
+    setup: Setup
+    recorded: Complexes
+    """(channel, K), phase 0 at the upward zero crossing of the fundamental of B."""
+    turn: Complexes
+    """(K,) the factors that turned the record's phase to this one."""
+    harmonics: Harmonics
+    """dims (1, K)"""
+    single: bool
+    """One-cycle record: the tips are centred, since a time mean depends on how long it dwelt there."""
+
+    @property
+    def omega(self) -> Floats:
+        """(K,) rad/s"""
+        return 2 * np.pi * self.waveform.frequency * np.arange(1, self.recorded.shape[-1] + 1)
+
+
+def assemble(record: Record, specimen: Specimen, circuit: Circuit, frequency: float) -> Loop:
+    """Loop of one capture.
+
+    Parameters
+    ----------
+    record : Record
+    specimen, circuit : what it was measured on and with
+    frequency : float, Hz     the setting; the record's own is found
+
+    Raises
+    ------
+    CaptureError    no whole cycle, or a unit that the sheet cannot bring to H or B
+    """
+    setup = setup_of(record, specimen, circuit)
+    samples = np.stack([record.field, record.induction])
+    waveform = mean_cycle(samples, record.sample_rate, frequency)
+    omega = 2 * np.pi * waveform.frequency * np.arange(1, waveform.harmonics.shape[1] + 1)
+    first = undo(waveform.harmonics[None], omega, setup, nominal_inputs(setup))
+    # sin(theta) has the two-sided amplitude -j/2: turn the fundamental of B to that direction.
+    angle = -np.pi / 2 - np.angle(first.induction[0, 0])
+    turn = np.exp(1j * angle * np.arange(1, len(omega) + 1))
+    turned = Harmonics(
+        first.field * turn, first.induction * turn, first.current * turn, first.voltage * turn, first.swapped
+    )
+    single = bool(np.any(waveform.end_gap != 0))
+    return Loop(waveform, setup, waveform.harmonics * turn, turn, turned, single)
+
+
+def setup_of(record: Record, specimen: Specimen, circuit: Circuit) -> Setup:
+    """The setup of a record; an unscaled screen division is refused."""
+    units = [
+        scaled_unit(circuit.field, record.field_unit),
+        scaled_unit(circuit.induction, record.induction_unit),
+    ]
+    for channel, side, unit in ((circuit.field, "field", units[0]), (circuit.induction, "induction", units[1])):
+        recorded = getattr(record, f"{side}_unit")
+        if channel.scale_from not in ("", recorded) or unit == "div":
+            wanted = channel.scale_from or 'a scale such as "0.5 V/div"'
+            raise CaptureError(
+                f"the {side} channel is recorded in {recorded}, and circuit '{circuit.name}' wants {wanted}",
+                f"Correct the unit in the capture, or scale in [circuits.{circuit.name}.{side}].",
+            )
+    return Setup(specimen, circuit, *units)
+
+
+def waves(harmonics: Harmonics, points: int, single: bool = False) -> tuple[Floats, Floats]:
+    """H and B on an even phase grid, centred; dims (batch, points), A/m and T."""
+    field, induction = on_phase(harmonics.field, points), on_phase(harmonics.induction, points)
+    if single:
+        return _between_tips(field), _between_tips(induction)
+    return field, _between_tips(induction)
+
+
+def _between_tips(wave: Floats) -> Floats:
+    middle = (wave.max(axis=-1, keepdims=True) + wave.min(axis=-1, keepdims=True)) / 2
+    return np.asarray(wave - middle)

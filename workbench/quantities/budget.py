@@ -1,0 +1,124 @@
+"""The uncertainty budget: every input varied by its standard uncertainty, and the scatter."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from workbench.base.measured import Measured
+from workbench.base.uncertainty import effective_dof, enlargement
+from workbench.base.vocabulary import QUANTITIES
+from workbench.loop.assemble import Loop
+from workbench.loop.undo import nominal_inputs
+from workbench.quantities.evaluate import DENSE, evaluate
+
+Floats = npt.NDArray[np.float64]
+Complexes = npt.NDArray[np.complex128]
+
+DRAWS = 32
+"""Noise draws where the scatter between cycles cannot be seen."""
+
+
+@dataclass(frozen=True)
+class Figures:
+    """Values with their budget, by quantity name."""
+
+    values: dict[str, float]
+    uncertainties: dict[str, float]
+    dof: dict[str, float]
+    budget: dict[str, dict[str, float]]
+    windows: dict[str, Floats]
+    """Each quantity in each window (or draw), for the steadiness of the tips."""
+
+
+def figures(loop: Loop, steps: tuple[float, float]) -> Figures:
+    """Values, standard uncertainties and budgets of one loop.
+
+    Parameters
+    ----------
+    loop : Loop
+    steps : (field, induction)    smallest step each channel can hold, recorded units; 0 if unknown
+
+    Notes
+    -----
+    Each input is moved by plus and minus its standard uncertainty through the whole chain, half the
+    difference is its signed share c u (GUM, 5.1.3, note 2): so the diameters' correlation between
+    H and B, and between loss and mass, is kept as it is.  The scatter comes from windows of whole
+    cycles, or, with too few cycles, from seeded draws of the noise that the mean cycle left.
+    """
+    uncertain = _uncertain_inputs(loop)
+    spectra, dof, factor = _type_a_spectra(loop)
+    coarse = _quantised_spectra(loop, steps)
+    found = _all_variants(loop, uncertain, np.concatenate([spectra, coarse]))
+    pairs, tail = 2 * len(uncertain), 1 + 2 * len(uncertain)
+    values, budget, degrees = {}, {}, {}
+    for name, series in found.items():
+        values[name] = float(series[0])
+        half = (series[1 : 1 + pairs : 2] - series[2 : 2 + pairs : 2]) / 2
+        shares = {source: float(share) for source, share in zip(uncertain, half, strict=True) if share != 0}
+        scatter = factor * float(np.std(series[tail : tail + len(spectra)], ddof=1))
+        enlarged = scatter * float(enlargement(dof))
+        parts = {**shares, "scatter": enlarged}
+        if len(coarse):
+            parts["quantisation"] = float(np.std(series[tail + len(spectra) :], ddof=1))
+        budget[name] = parts
+        systematic = math.sqrt(sum(share**2 for source, share in parts.items() if source != "scatter"))
+        degrees[name] = effective_dof({"scatter": (scatter, dof), "inputs": (systematic, math.inf)})
+    total = {name: math.sqrt(sum(share**2 for share in parts.values())) for name, parts in budget.items()}
+    windows = {name: series[tail : tail + len(spectra)] for name, series in found.items()}
+    return Figures(values, total, degrees, budget, windows)
+
+
+def _uncertain_inputs(loop: Loop) -> Mapping[str, Measured]:
+    setup = loop.setup
+    inputs = {**setup.circuit.inputs(), **setup.specimen.scalars()}
+    return {name: value for name, value in inputs.items() if value.uncertainty > 0}
+
+
+def _all_variants(loop: Loop, uncertain: Mapping[str, Measured], spectra: Complexes) -> dict[str, Floats]:
+    """Quantities of: the loop itself; each input up, down; each spectrum of the scatter."""
+    count = 1 + 2 * len(uncertain) + len(spectra)
+    inputs: dict[str, float | Floats] = dict(nominal_inputs(loop.setup))
+    for place, (name, value) in enumerate(uncertain.items()):
+        column = np.full((count, 1), float(value.value))
+        column[1 + 2 * place] += value.uncertainty
+        column[2 + 2 * place] -= value.uncertainty
+        inputs[name] = column
+    own = np.broadcast_to(loop.recorded, (count - len(spectra), *loop.recorded.shape))
+    recorded = np.concatenate([own, spectra])
+    found = evaluate(recorded, loop.waveform.frequency, loop.setup, inputs, loop.single, DENSE)
+    return {name: found[name] for name in QUANTITIES}
+
+
+def _type_a_spectra(loop: Loop) -> tuple[Complexes, float, float]:
+    """Spectra whose spread times a factor is the scatter, and its degrees of freedom."""
+    waveform = loop.waveform
+    if waveform.windows is not None:
+        lost = np.arange(1, loop.recorded.shape[-1] + 1) > waveform.kept[:, None]
+        spectra = np.where(lost, 0, waveform.windows.harmonics()) * loop.turn
+        return spectra, waveform.windows.scale.dof, waveform.windows.scale.factor
+    return loop.recorded + _draws(loop, waveform.harmonic_noise, DRAWS), DRAWS - 1.0, 1.0
+
+
+def _draws(loop: Loop, rms: Floats, count: int) -> Complexes:
+    """Seeded noise on the kept harmonics; `rms` of a complex amplitude, by channel."""
+    shape = (count, *loop.recorded.shape)
+    generator = np.random.default_rng(count)
+    noise = (generator.standard_normal(shape) + 1j * generator.standard_normal(shape)) / math.sqrt(2)
+    kept = np.arange(1, shape[-1] + 1) <= loop.waveform.kept[:, None]
+    return np.asarray(noise * rms[:, None] * kept)
+
+
+def _quantised_spectra(loop: Loop, steps: tuple[float, float]) -> Complexes:
+    """Spectra with the error of quantisation, where the noise is too small to show it as scatter."""
+    step = np.asarray(steps, float)
+    hidden = loop.waveform.noise < 0.5 * step
+    if not hidden.any():
+        return np.empty((0, *loop.recorded.shape), complex)
+    # Without noise every cycle meets the same codes: only the samples of one cycle average out.
+    rms = np.where(hidden, step / math.sqrt(12 * loop.waveform.samples_per_cycle), 0.0)
+    return loop.recorded + _draws(loop, rms, DRAWS // 2)
