@@ -1,0 +1,83 @@
+"""Which runs leave: a choice of specimens and settings, checked against what there is."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, fields
+
+import numpy as np
+import xarray as xr
+
+from workbench.base.errors import HandoffError, nearest
+from workbench.base.vocabulary import SETTINGS, shown_unit
+
+# Settings come from text: 0.1 kHz and 100 Hz may differ in the last digit of a double.
+_SAME_SETTING = 1e-9
+
+
+@dataclass(frozen=True)
+class Choice:
+    """Names and settings to keep; None keeps all.  Settings in Hz, degC, A/m, T."""
+
+    specimen: Sequence[str] | None = None
+    frequency: Sequence[float] | None = None
+    temperature: Sequence[float] | None = None
+    peak_field: Sequence[float] | None = None
+    peak_induction: Sequence[float] | None = None
+
+    def limits(self) -> Mapping[str, Sequence[str] | Sequence[float]]:
+        """What the choice asks for, by name, without the settings that it leaves open."""
+        asked = {each.name: getattr(self, each.name) for each in fields(self)}
+        return {name: wanted for name, wanted in asked.items() if wanted is not None}
+
+    def __str__(self) -> str:
+        parts = [_sentence(name, wanted) for name, wanted in self.limits().items()]
+        return "; ".join(parts) or "every setting of every specimen"
+
+
+def chosen(runs: xr.Dataset, choice: Choice) -> xr.Dataset:
+    """The kept runs that the choice asks for; runs set aside stay behind.
+
+    Parameters
+    ----------
+    runs : Dataset, dim run    as `Store.runs`
+
+    Raises
+    ------
+    HandoffError    a specimen or setting that no run has, or no run that has them all
+    """
+    keep = runs["standing"].values == "kept"
+    for name, wanted in choice.limits().items():
+        keep &= _matches(name, runs[name].values, wanted)
+    if not keep.any():
+        raise HandoffError(
+            f"Choosing runs for a hand-off: wanted {choice}; found no kept run with all of these. "
+            "Ask for fewer conditions at once, or take runs back."
+        )
+    return runs.isel(run=np.flatnonzero(keep))
+
+
+def _matches(name: str, have: np.ndarray, wanted: Sequence[str] | Sequence[float]) -> np.ndarray:
+    hits = [_equal(have, each) for each in wanted]
+    for each, hit in zip(wanted, hits, strict=True):
+        if not hit.any():
+            known = sorted(set(have[have == have].tolist()))  # NaN, the setting not used, is not itself
+            raise HandoffError(
+                f"Choosing runs for a hand-off, {name}: wanted one that was measured; found {_shown(name, each)}. "
+                + nearest(_shown(name, each), [_shown(name, value) for value in known])
+            )
+    return np.any(hits, axis=0) if hits else np.zeros(have.shape, bool)
+
+
+def _equal(have: np.ndarray, wanted: str | float) -> np.ndarray:
+    if isinstance(wanted, str):
+        return have == wanted
+    return np.isclose(have, wanted, rtol=_SAME_SETTING, atol=0)
+
+
+def _shown(name: str, value: str | float) -> str:
+    return value if isinstance(value, str) else f"{value:g} {shown_unit(SETTINGS[name].unit)}"
+
+
+def _sentence(name: str, wanted: Sequence[str] | Sequence[float]) -> str:
+    return f"{name} {', '.join(_shown(name, each) for each in wanted)}"

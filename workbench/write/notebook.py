@@ -1,0 +1,64 @@
+"""The notebook that opens a store."""
+
+from __future__ import annotations
+
+import os
+from pathlib import Path
+from typing import Any
+
+import nbformat
+
+from workbench.base.errors import StoreError
+from workbench.store.open import Store
+
+_ABOUT = """\
+# The workbench on this campaign
+
+The cell below opens the store and shows the workbench. `store.runs` and `store.cube()` are xarray Datasets of the same
+figures, `store.failures` lists the captures that could not be used. This notebook is yours: it is never overwritten."""
+_OPEN = """\
+import workbench
+
+store = workbench.open_store({name!r})
+workbench.Workbench(store)"""
+KERNEL = {
+    "kernelspec": {"name": "python3", "display_name": "Python 3 (ipykernel)", "language": "python"},
+    "language_info": {"name": "python"},
+}
+"""Metadata of a notebook that runs on the kernel of its own environment."""
+
+
+def notebook_of(*cells: tuple[str, str]) -> Any:
+    """A notebook of (kind, source) cells, kind "markdown" or "code", with ids that stay the same."""
+    book = nbformat.v4.new_notebook(metadata=KERNEL)
+    for number, (kind, source) in enumerate(cells, start=1):
+        new_cell = nbformat.v4.new_markdown_cell if kind == "markdown" else nbformat.v4.new_code_cell
+        book.cells.append(new_cell(source, id=f"cell-{number}"))
+    return book
+
+
+def opening_notebook(store: Store, path: str | os.PathLike[str]) -> Path:
+    """Write the notebook that opens `store`, unless there is one already.
+
+    Parameters
+    ----------
+    path : where the notebook stands; the store is named relative to it, so that both can move together
+
+    Raises
+    ------
+    StoreError    the notebook cannot be written
+    """
+    where = Path(path)
+    name = os.path.relpath(Path(store.path).resolve(), where.resolve().parent)
+    book = notebook_of(("markdown", _ABOUT), ("code", _OPEN.format(name=Path(name).as_posix())))
+    try:
+        # "x" and not a look before: two starts at once must not overwrite each other's.
+        with where.open("x", encoding="utf-8") as file:
+            nbformat.write(book, file)
+    except FileExistsError:
+        pass
+    except OSError as error:
+        raise StoreError(
+            f"Writing the notebook {where}: {error.strerror}. Reduce into a folder where you may write (--into)."
+        ) from error
+    return where
