@@ -29,8 +29,10 @@ _ONE_CYCLE = 1.1
 _SEARCH_POINTS = 160
 """Samples a cycle that suffice to find the period."""
 _LEAST_SQUARES_BELOW = 6
-_SIGNIFICANT = 5.0
-"""A harmonic counts above this multiple of its noise: one in 270,000 does so by chance."""
+_BAND = 12
+"""Harmonics whose mean power is held against the noise: together they show what one alone does not."""
+_SIGNIFICANT = 1 + 4 / _BAND**0.5
+"""A band counts above this multiple of its noise power, four standard deviations of it."""
 
 
 @dataclass(frozen=True)
@@ -43,7 +45,7 @@ class Waveform:
     """Cycles in the record, whole or not."""
     samples_per_cycle: float
     harmonics: Complexes
-    """(channel, K) two-sided amplitudes of k = 1 … K; harmonics lost in noise are zero."""
+    """(channel, K) two-sided amplitudes of k = 1 … K."""
     noise: Floats
     """(channel,) standard deviation of one recorded sample."""
     harmonic_noise: Floats
@@ -52,8 +54,10 @@ class Waveform:
     """(channel, cycle) mean of each whole cycle: offset and drift."""
     end_gap: Floats
     """(channel,) last minus first value of a one-cycle record, taken out as a straight line; else 0."""
+    gap_noise: Floats
+    """(channel,) standard uncertainty of `end_gap`."""
     kept: npt.NDArray[np.intp]
-    """(channel,) highest harmonic above the noise."""
+    """(channel,) harmonics above this one are lost in the noise."""
     windows: Windows | None
     """How to look at the scatter between cycles; None where there are too few."""
 
@@ -106,10 +110,10 @@ def mean_cycle(samples: Floats, sample_rate: float, expected: float) -> Waveform
     >>> round(found.frequency, 4), abs(found.harmonics[:, 0]).round(6).tolist()
     (618.5, [0.5, 1.5])
     """
-    end_gap = np.zeros(2)
+    end_gap, gap_noise = np.zeros(2), 0.0
     single = _one_cycle_length(samples, expected / sample_rate)
     if single is not None:
-        samples, end_gap = _ends_joined(samples[:, : round(1 / single)])
+        samples, end_gap, gap_noise = _ends_joined(samples[:, : round(1 / single)])
     per_sample = single if single is not None else _cycles_per_sample(samples, expected / sample_rate)
     per_cycle = 1 / per_sample
     if per_cycle < FEWEST_SAMPLES:
@@ -127,12 +131,12 @@ def mean_cycle(samples: Floats, sample_rate: float, expected: float) -> Waveform
     noise = _sample_noise(averaged, folded, position)
     harmonic_noise = noise * np.sqrt(weight_variance)
     kept = _kept_harmonics(folded, harmonic_noise)
-    harmonics = np.where(np.arange(1, highest + 1) <= kept[:, None], folded / response, 0)
     cycles = whole_cycles(total)
     return Waveform(
         frequency=per_sample * sample_rate, cycles=total, samples_per_cycle=per_cycle,
-        harmonics=harmonics, noise=noise * np.sqrt(factor), harmonic_noise=harmonic_noise,
-        levels=_cycle_means(averaged, position, cycles), end_gap=end_gap, kept=kept,
+        harmonics=folded / response, noise=noise * np.sqrt(factor), harmonic_noise=harmonic_noise,
+        levels=_cycle_means(averaged, position, cycles), end_gap=end_gap,
+        gap_noise=gap_noise * noise * np.sqrt(factor), kept=kept,
         windows=_windows(averaged, position, cycles, response),
     )  # fmt: skip
 
@@ -158,16 +162,20 @@ def _cycles_per_sample(samples: Floats, expected: float) -> float:
     return best_frequency(blocks, start, with_drift=blocks.shape[1] * start > 1.5) / factor
 
 
-def _ends_joined(samples: Floats) -> tuple[Floats, Floats]:
-    """A one-cycle record without the step between its end and its beginning, and that step."""
+def _ends_joined(samples: Floats) -> tuple[Floats, Floats, float]:
+    """A one-cycle record without the step from its end to its beginning, that step, and its noise.
+
+    The noise is for unit noise of a sample.
+    """
     count = samples.shape[1]
-    few = max(3, count // 200)
-    # End and beginning side by side follow one straight line but for the step between them.
+    few = max(4, count // 100)
+    # End and beginning side by side follow one parabola but for the step between them.
     side_by_side = np.concatenate([samples[:, -few:], samples[:, :few]], axis=1)
-    place = np.arange(-few, few) + 0.5
-    design = np.stack([np.ones(2 * few), place, place > 0], axis=1)
-    gap = -np.linalg.lstsq(design, side_by_side.T, rcond=None)[0][2]
-    return samples - gap[:, None] * ((np.arange(count) + 0.5) / count - 0.5), gap
+    place = (np.arange(-few, few) + 0.5) / few
+    design = np.stack([np.ones(2 * few), place, place**2, place > 0], axis=1)
+    gap = -np.linalg.lstsq(design, side_by_side.T, rcond=None)[0][3]
+    noise = float(np.sqrt(np.linalg.inv(design.T @ design)[3, 3]))
+    return samples - gap[:, None] * ((np.arange(count) + 0.5) / count - 0.5), gap, noise
 
 
 def _one_cycle_length(samples: Floats, expected: float) -> float | None:
@@ -220,11 +228,13 @@ def _sample_noise(samples: Floats, folded: Complexes, position: Floats) -> Float
 
 
 def _kept_harmonics(folded: Complexes, harmonic_noise: Floats) -> npt.NDArray[np.intp]:
-    """Half again the highest harmonic that stands out of the noise, per channel."""
-    clear = np.abs(folded) > _SIGNIFICANT * harmonic_noise[:, None]
-    last = folded.shape[1] - np.argmax(clear[:, ::-1], axis=1)
-    last = np.where(clear.any(axis=1), last, 1)
-    return np.minimum(folded.shape[1], np.maximum(last * 3 // 2, 11))
+    """Half again the highest band of harmonics that stands out of the noise, per channel."""
+    highest = folded.shape[1]
+    power = np.cumsum(np.pad(np.abs(folded) ** 2, ((0, 0), (1, 0))), axis=1)
+    band = (power[:, _BAND:] - power[:, :-_BAND]) / _BAND
+    clear = band > _SIGNIFICANT * harmonic_noise[:, None] ** 2
+    last = np.where(clear.any(axis=1), clear.shape[1] - np.argmax(clear[:, ::-1], axis=1), 1)
+    return np.minimum(highest, np.maximum((last + _BAND // 2) * 3 // 2, _BAND))
 
 
 def _cycle_means(samples: Floats, position: Floats, cycles: int) -> Floats:

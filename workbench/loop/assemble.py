@@ -35,6 +35,12 @@ class Loop:
     """One-cycle record: the tips are centred, since a time mean depends on how long it dwelt there."""
 
     @property
+    def kept(self) -> tuple[int, int]:
+        """Highest harmonic above the noise, of the field and of the induction channel."""
+        field, induction = self.waveform.kept
+        return int(field), int(induction)
+
+    @property
     def omega(self) -> Floats:
         """(K,) rad/s"""
         return 2 * np.pi * self.waveform.frequency * np.arange(1, self.recorded.shape[-1] + 1)

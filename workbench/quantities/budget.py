@@ -14,7 +14,7 @@ from workbench.base.uncertainty import effective_dof, enlargement
 from workbench.base.vocabulary import QUANTITIES
 from workbench.loop.assemble import Loop
 from workbench.loop.undo import nominal_inputs
-from workbench.quantities.evaluate import DENSE, evaluate
+from workbench.quantities.evaluate import evaluate
 
 Floats = npt.NDArray[np.float64]
 Complexes = npt.NDArray[np.complex128]
@@ -90,7 +90,8 @@ def _all_variants(loop: Loop, uncertain: Mapping[str, Measured], spectra: Comple
         inputs[name] = column
     own = np.broadcast_to(loop.recorded, (count - len(spectra), *loop.recorded.shape))
     recorded = np.concatenate([own, spectra])
-    found = evaluate(recorded, loop.waveform.frequency, loop.setup, inputs, loop.single, DENSE)
+    noise = loop.waveform.harmonic_noise
+    found = evaluate(recorded, loop.waveform.frequency, loop.setup, inputs, loop.single, loop.kept, noise)
     return {name: found[name] for name in QUANTITIES}
 
 
@@ -98,19 +99,24 @@ def _type_a_spectra(loop: Loop) -> tuple[Complexes, float, float]:
     """Spectra whose spread times a factor is the scatter, and its degrees of freedom."""
     waveform = loop.waveform
     if waveform.windows is not None:
-        lost = np.arange(1, loop.recorded.shape[-1] + 1) > waveform.kept[:, None]
-        spectra = np.where(lost, 0, waveform.windows.harmonics()) * loop.turn
-        return spectra, waveform.windows.scale.dof, waveform.windows.scale.factor
-    return loop.recorded + _draws(loop, waveform.harmonic_noise, DRAWS), DRAWS - 1.0, 1.0
+        return waveform.windows.harmonics() * loop.turn, waveform.windows.scale.dof, waveform.windows.scale.factor
+    drawn = _draws(loop, waveform.harmonic_noise, DRAWS) + _gap_draws(loop, DRAWS)
+    return loop.recorded + drawn, DRAWS - 1.0, 1.0
 
 
 def _draws(loop: Loop, rms: Floats, count: int) -> Complexes:
-    """Seeded noise on the kept harmonics; `rms` of a complex amplitude, by channel."""
+    """Seeded noise on every harmonic; `rms` of a complex amplitude, by channel."""
     shape = (count, *loop.recorded.shape)
     generator = np.random.default_rng(count)
     noise = (generator.standard_normal(shape) + 1j * generator.standard_normal(shape)) / math.sqrt(2)
-    kept = np.arange(1, shape[-1] + 1) <= loop.waveform.kept[:, None]
-    return np.asarray(noise * rms[:, None] * kept)
+    return np.asarray(noise * rms[:, None])
+
+
+def _gap_draws(loop: Loop, count: int) -> Complexes:
+    """What the uncertain step between the ends of a one-cycle record leaves: a sawtooth."""
+    order = np.arange(1, loop.recorded.shape[-1] + 1)
+    size = np.random.default_rng(count + 1).standard_normal((count, 2, 1)) * loop.waveform.gap_noise[:, None]
+    return np.asarray(size * 1j / (2 * np.pi * order) * loop.turn)
 
 
 def _quantised_spectra(loop: Loop, steps: tuple[float, float]) -> Complexes:

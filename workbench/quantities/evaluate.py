@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import numpy.typing as npt
 
@@ -9,7 +11,7 @@ from workbench.base.constants import MU0
 from workbench.bench.specimen import geometry
 from workbench.cycle.spread import on_phase
 from workbench.loop.assemble import waves
-from workbench.loop.undo import Harmonics, Inputs, Setup, undo
+from workbench.loop.undo import Harmonics, Inputs, Setup, nominal_inputs, undo
 from workbench.quantities import power, shape
 
 Floats = npt.NDArray[np.float64]
@@ -20,8 +22,9 @@ DENSE = 2048
 
 
 def evaluate(
-    recorded: Complexes, frequency: float, setup: Setup, inputs: Inputs, single: bool, points: int = DENSE
-) -> dict[str, Floats]:
+    recorded: Complexes, frequency: float, setup: Setup, inputs: Inputs, single: bool,
+    kept: tuple[int, int], harmonic_noise: Floats,
+) -> dict[str, Floats]:  # fmt: skip
     """Every quantity of design table, each of dims (batch).
 
     Parameters
@@ -31,39 +34,72 @@ def evaluate(
     setup : Setup
     inputs : {name: float or array of dims (batch, 1)}
     single : bool                                      one-cycle record, see `waves`
-    points : int                                       phase points of the waves, > 2 K
+    kept : (field, induction)                          highest harmonic of each above the noise
+    harmonic_noise : array, dims (channel)             rms noise of an amplitude, recorded units
 
     Returns
     -------
     {quantity name: array of dims (batch)}; NaN where a quantity is not defined
+
+    Notes
+    -----
+    Shapes and waveform figures are read off the harmonics above the noise, since noise always
+    raises a largest value and a distortion; areas and powers need no such choice.
     """
     omega = 2 * np.pi * frequency * np.arange(1, recorded.shape[-1] + 1)
     harmonics = undo(recorded, omega, setup, inputs)
-    field, induction = waves(harmonics, points, single)
+    clear = above_noise(harmonics, kept)
+    noise = point_noise(frequency, setup, kept, harmonic_noise)
+    field, induction = waves(clear, DENSE, single)
     with np.errstate(divide="ignore", invalid="ignore"):
-        found = _of_shape(field, induction)
+        found = _of_crossings(field, induction)
+        found |= _of_extremes(field, induction, *noise)
+        found["remanence_ratio"] = found["remanence"] / found["induction_tip"]
         found |= _of_fundamentals(harmonics.field, harmonics.induction)
         found |= _of_loss(harmonics, frequency, setup, inputs)
-    slope = harmonics.induction * omega
-    found["form_factor"] = power.form_factor(on_phase(1j * slope, points))
+    slope = clear.induction * omega
+    found["form_factor"] = power.form_factor(on_phase(1j * slope, DENSE))
     found["induction_distortion"] = power.distortion(slope)
     found["measured_frequency"] = np.array(frequency)
     batch = len(found["field_tip"])
     return {name: np.broadcast_to(np.ravel(value), (batch,)) for name, value in found.items()}
 
 
-def _of_shape(field: Floats, induction: Floats) -> dict[str, Floats]:
-    polarization = shape.polarization(field, induction)
-    field_tip, induction_tip = shape.tip(field), shape.tip(induction)
-    remanence = shape.remanence(field, induction)
+def above_noise(harmonics: Harmonics, kept: tuple[int, int]) -> Harmonics:
+    """The same loop without the harmonics of H and B that are lost in the noise of their channel."""
+    order = np.arange(1, harmonics.field.shape[-1] + 1)
+    field, induction = (
+        np.where(order <= highest, wave, 0)
+        for highest, wave in zip(kept, (harmonics.field, harmonics.induction), strict=True)
+    )
+    return replace(harmonics, field=field, induction=induction)
+
+
+def _of_crossings(field: Floats, induction: Floats) -> dict[str, Floats]:
+    return {
+        "coercivity": shape.coercivity(field, induction),
+        "coercivity_j": shape.coercivity(field, shape.polarization(field, induction)),
+        "remanence": shape.remanence(field, induction),
+    }
+
+
+def point_noise(
+    frequency: float, setup: Setup, kept: tuple[int, int], harmonic_noise: Floats
+) -> tuple[float, float]:
+    """Noise of one phase point of H, A/m, and of B, T: that of all harmonics kept."""
+    channels = np.zeros((2, 2, max(kept)))
+    channels[0, 0], channels[1, 1] = harmonic_noise
+    omega = 2 * np.pi * frequency * np.arange(1.0, max(kept) + 1)
+    alone = above_noise(undo(channels.astype(complex), omega, setup, nominal_inputs(setup)), kept)
+    return float(np.linalg.norm(alone.field)) * 2**0.5, float(np.linalg.norm(alone.induction)) * 2**0.5
+
+
+def _of_extremes(field: Floats, induction: Floats, noise_h: float, noise_b: float) -> dict[str, Floats]:
+    field_tip, induction_tip = shape.tip(field, noise_h), shape.tip(induction, noise_b)
     return {
         "field_tip": field_tip,
         "induction_tip": induction_tip,
-        "polarization_tip": shape.tip(polarization),
-        "coercivity": shape.coercivity(field, induction),
-        "coercivity_j": shape.coercivity(field, polarization),
-        "remanence": remanence,
-        "remanence_ratio": remanence / induction_tip,
+        "polarization_tip": shape.tip(shape.polarization(field, induction), noise_b + MU0 * noise_h),
         "amplitude_permeability": induction_tip / (MU0 * field_tip),
         "energy_product": shape.energy_product(field, induction),
     }

@@ -11,7 +11,7 @@ from workbench.base.vocabulary import QUANTITIES
 from workbench.capture.campaign import RunLine
 from workbench.loop.assemble import Loop, waves
 from workbench.quantities.budget import Figures
-from workbench.quantities.evaluate import DENSE
+from workbench.quantities.evaluate import DENSE, above_noise
 from workbench.quantities.shape import coercive_fields, count_crossings
 
 _SINE_FORM_FACTOR = math.pi / (2 * math.sqrt(2))
@@ -87,7 +87,7 @@ def _waveform(figures: Figures, limit: Limits) -> Seen:
 
 def _symmetry(loop: Loop, limit: Limits) -> Seen:
     seen: Seen = {}
-    field, induction = waves(loop.harmonics, DENSE, loop.single)
+    field, induction = waves(above_noise(loop.harmonics, loop.kept), DENSE, loop.single)
     rising, falling = (float(side[0]) for side in coercive_fields(field, induction))
     mean = abs(rising + falling) / 2
     if mean > 0 and abs(rising - falling) / mean > limit["biased"]:
