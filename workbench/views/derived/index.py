@@ -121,6 +121,11 @@ class RunIndex:
         """Alloy of a specimen, its own name where none is given."""
         return self.alloys[self._places[0][specimen]] or specimen
 
+    @cached_property
+    def alloy_names(self) -> tuple[str, ...]:
+        """Alloy of each specimen in order, its own name where none is given."""
+        return tuple(self.alloy_of(name) for name in self.specimens)
+
     def ladder(self, specimen: str) -> tuple[Axis, Axis, Axis]:
         """Peaks, frequencies and temperatures at which a specimen has any run to show."""
         place = self.specimen_place(specimen)

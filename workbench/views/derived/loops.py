@@ -55,6 +55,7 @@ class LoopFamily:
     tip_field: Drawn
     """(tip,)"""
     tip_induction: Drawn
+    tip_colours: tuple[str, ...]
     tip_doubtful: npt.NDArray[np.bool_]
     tip_choices: tuple[dict[str, Any], ...]
     """What to choose where a tip is clicked."""
@@ -112,7 +113,7 @@ def _crossings(values: npt.NDArray[np.float64]) -> npt.NDArray[np.intp]:
 
 def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
     """The family of loops along the chosen axis, with the loop of the held setting on top."""
-    looks = alloy_looks(index.alloys)
+    looks = alloy_looks(index.alloy_names)
     factor, unit, largest_field, largest_induction = _frame(index, choice)
     steps = _steps(index, choice)
     members = [(each, index.row(each.front, each.peak, each.frequency, each.temperature)) for each in steps]
@@ -121,6 +122,7 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
     drawn = kept if choice.along != "specimen" else []
     shapes = [thinned(index.field[row] / factor, index.induction[row]) for _, row in drawn]
     rows = np.array([row for _, row in kept], dtype=int)
+    front = looks[index.alloy_of(choice.front)]
     chosen = _curve(index, choice, choice.front, factor, looks)
     beside = (_curve(index, choice, name, factor, looks) for name in choice.specimens if name != choice.front)
     held = replace(choice, quantity="", **({choice.along: None} if choice.along != "specimen" else {"front": ""}))
@@ -131,12 +133,13 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
         field_axis=symmetric_axis(largest_field / factor),
         induction_axis=symmetric_axis(largest_induction),
         field_label=f"H / {unit}",
-        look=looks[index.alloy_of(choice.front)],
+        look=front,
         field=np.array([h for h, _ in shapes], np.float32).reshape(len(shapes), -1),
         induction=np.array([b for _, b in shapes], np.float32).reshape(len(shapes), -1),
         strength=strengths(len(shapes)),
         tip_field=(index.values("field_tip")[rows] / factor).astype(np.float32),
         tip_induction=index.values("induction_tip")[rows].astype(np.float32),
+        tip_colours=tuple(looks[index.alloy_of(each.front)].colour for each, _ in kept) or (front.colour,),
         tip_doubtful=index.doubtful[rows],
         tip_choices=tuple(_click(each, choice.along) for each, _ in kept),
         ends=_ends(kept, choice.along, index),

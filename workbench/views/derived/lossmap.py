@@ -31,11 +31,9 @@ class Tiles:
     choices: tuple[dict[str, Any], ...]
     """What to choose where a tile is clicked."""
 
-    def middle(self, place: int, log_y: bool) -> tuple[float, float]:
-        """The middle of a tile as the eye sees it on the axes."""
-        low, high = float(self.y[place].min()), float(self.y[place].max())
-        x = math.sqrt(float(self.x[place].min() * self.x[place].max()))
-        return x, math.sqrt(low * high) if log_y else (low + high) / 2
+    def middles(self, y_axis: AxisPlan) -> tuple[Floats, Floats]:
+        """Middles of the tiles as the eye sees them: Hz, and the place on the ordinate, 0 to 1."""
+        return np.sqrt(self.x[:, 0] * self.x[:, 1]), y_axis.place(self.y).mean(axis=1)
 
 
 @dataclass(frozen=True, eq=False)
@@ -58,9 +56,14 @@ class LossMap:
     strip_label: str
     doubtful: npt.NDArray[np.intp]
     """Places of the tiles whose run is doubtful."""
+    doubt_places: tuple[Floats, Floats]
+    """Where their signs stand: Hz, and the place on the ordinate, 0 to 1."""
     holes: Tiles
     hole_texts: tuple[str, ...]
     """Why there is no figure, one a hole."""
+    hole_words: tuple[str, ...]
+    """What is written in each hole: the reason, its first letter, or nothing, as the room allows."""
+    hole_places: tuple[Floats, Floats]
     outline: tuple[Floats, Floats] | None
     """Corners of the chosen tile or hole."""
     summary: str
@@ -92,23 +95,30 @@ def loss_map(index: RunIndex, choice: Choice) -> LossMap:
     strip = _strip(index, choice)
     at = [box for place, box in flat if (place.peak, place.frequency) == (choice.peak, choice.frequency)]
     word = QUANTITIES[choice.quantity]
-    doubtful = index.doubtful[[place.row for place, _ in good]]
+    doubtful = np.flatnonzero(index.doubtful[[place.row for place, _ in good]])
+    y_axis = _induction_axis([box for _, box in flat], log_y)
+    tiles, holes = _tiles(good), _tiles(bad)
+    x, y = tiles.middles(y_axis)
+    texts = tuple(place.hole for place, _ in bad)
     return LossMap(
         key=(index.token, "map", choice.front, choice.temperature, choice.quantity),
         chosen_key=(index.token, choice.front, choice.peak, choice.frequency, choice.temperature),
         title=f"{choice.front} · {spelled(choice.temperature, '°C')}",
         x_axis=_frequency_axis([column[0].frequency for column in columns], edges),
-        y_axis=_induction_axis([box for _, box in flat], log_y),
+        y_axis=y_axis,
         x_label="f set / Hz",
         y_label=label("induction_tip"),
-        tiles=_tiles(good),
+        tiles=tiles,
         values=values,
-        colours=tuple(map_colours(_places_on(strip, values))),
+        colours=tuple(map_colours(strip.place(values))),
         strip=strip,
         strip_label=f"{word.symbol} / {shown_unit(word.unit)}" if shown_unit(word.unit) else word.symbol,
-        doubtful=np.flatnonzero(doubtful),
-        holes=_tiles(bad),
-        hole_texts=tuple(place.hole for place, _ in bad),
+        doubtful=doubtful,
+        doubt_places=(x[doubtful], y[doubtful]),
+        holes=holes,
+        hole_texts=texts,
+        hole_words=_words(texts, holes, y_axis, len(columns)),
+        hole_places=holes.middles(y_axis),
         outline=_corners(at[0]) if at else None,
         summary=_summary(choice, good, values, bad),
     )
@@ -133,7 +143,7 @@ def _columns(index: RunIndex, choice: Choice) -> list[list[_Place]]:
             if row < 0:
                 hole = index.why_not(choice.front, peak, frequency, choice.temperature)
             else:
-                hole = "" if math.isfinite(quantity[row]) and induction > 0 else "not computable"
+                hole = "" if math.isfinite(quantity[row]) and induction > 0 else "no figure"
             if not induction > 0:
                 induction = _guessed(frequency, positive, [rows[peak, each] for each in positive], reached)
             column.append(_Place(peak, frequency, row, induction, hole))
@@ -188,6 +198,15 @@ def _tiles(places: list[tuple[_Place, tuple[float, float, float, float]]]) -> Ti
     )
 
 
+def _words(texts: tuple[str, ...], holes: Tiles, y_axis: AxisPlan, columns: int) -> tuple[str, ...]:
+    """Words as the room in a tile of a pane of usual size allows."""
+    heights = np.ptp(y_axis.place(holes.y), axis=1) if texts else []
+    roomy = columns <= 6
+    return tuple(
+        (text if roomy else text[0]) if height > 0.045 else "" for text, height in zip(texts, heights, strict=True)
+    )
+
+
 def _frequency_axis(frequencies: list[float], edges: list[tuple[float, float]]) -> AxisPlan:
     return named_axis(edges[0][0], edges[-1][1], frequencies) if edges else log_axis(math.nan, math.nan)
 
@@ -207,12 +226,6 @@ def _strip(index: RunIndex, choice: Choice) -> AxisPlan:
     if low > 0 and high / low > 5:
         return log_axis(low, high, most=5)
     return linear_axis(low, high)
-
-
-def _places_on(strip: AxisPlan, values: Floats) -> Floats:
-    if strip.log:
-        return np.asarray(np.log(np.maximum(values, 1e-300) / strip.low) / math.log(strip.high / strip.low))
-    return np.asarray((values - strip.low) / (strip.high - strip.low))
 
 
 def _summary(choice: Choice, good: list[Any], values: Floats, bad: list[Any]) -> str:

@@ -45,16 +45,18 @@ class PermeabilityCurves:
     y_axis: AxisPlan
     x_label: str
     y_label: str
+    front_colour: str
     curves: tuple[LadderCurve, ...]
     band: tuple[tuple[Floats, Floats], ...]
     """Closed polygons (x, y) of the 95 % band of the specimen in front, one a stretch without gap."""
+    band_note: str
     chosen: tuple[float, float] | None
     summary: str
 
 
 def permeability_curves(index: RunIndex, choice: Choice) -> PermeabilityCurves:
     """Amplitude permeability against the tip of the field, log-log, with the held setting marked."""
-    looks = alloy_looks(index.alloys)
+    looks = alloy_looks(index.alloy_names)
     x_name = "induction_tip" if index.peak_name == "peak_induction" else "field_tip"
     x_all, y_all = index.values(x_name), index.values("amplitude_permeability")
     curves = tuple(_curve(index, choice, name, x_all, y_all, looks) for name in choice.specimens)
@@ -73,7 +75,9 @@ def permeability_curves(index: RunIndex, choice: Choice) -> PermeabilityCurves:
         y_axis=_axis(index, choice, y_all),
         x_label=label(x_name),
         y_label=label("amplitude_permeability"),
+        front_colour=looks[index.alloy_of(choice.front)].colour,
         curves=curves,
+        band_note="shaded: 95 % band of the specimen in front",
         band=_band(index, [curve for curve in curves if curve.specimen == choice.front]),
         chosen=chosen,
         summary=_summary(index, [curve for curve in curves if curve.specimen == choice.front], dropped),

@@ -43,10 +43,11 @@ def settled(index: RunIndex, choice: Choice) -> Choice:
     is said to have none.
     """
     chosen = tuple(name for name in choice.specimens if name in index.specimens)
+    if not chosen:
+        return replace(choice, specimens=())
     front = choice.front if choice.front in index.specimens else ""
-    if chosen and not front:
-        front = chosen[0]
-    if chosen and front not in chosen:
+    front = front or chosen[0]
+    if front not in chosen:
         chosen = (*chosen, front)
     peaks, frequencies, temperatures = index.ladder(front)
     quantity = choice.quantity if choice.quantity in QUANTITIES else _loss_quantity(index, chosen)

@@ -5,10 +5,11 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
-_SUPERSCRIPTS = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
+SUPERSCRIPTS = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 
 @dataclass(frozen=True)
@@ -20,6 +21,17 @@ class AxisPlan:
     ticks: tuple[float, ...]
     texts: tuple[str, ...]
     log: bool = False
+
+    def place(self, value: Any) -> Any:
+        """Where a value (or an array of values) lies between the limits, 0 to 1."""
+        if self.log:
+            return np.log(np.maximum(value, 1e-300) / self.low) / math.log(self.high / self.low)
+        return (np.asarray(value, float) - self.low) / (self.high - self.low)
+
+    def unit(self) -> AxisPlan:
+        """The same ticks on an axis from 0 to 1, for a screen whose scale cannot change its kind."""
+        ticks = tuple(round(float(self.place(tick)), 6) for tick in self.ticks)
+        return AxisPlan(0.0, 1.0, ticks, self.texts)
 
 
 def symmetric_axis(largest: float) -> AxisPlan:
@@ -86,7 +98,12 @@ def named_axis(low: float, high: float, values: Sequence[float], most: int = 6) 
     """A logarithmic axis whose ticks are the settings themselves, thinned to the most that fit."""
     every = math.ceil(len(values) / most) if values else 1
     kept = tuple(float(value) for value in values[::every])
-    return AxisPlan(low, high, kept, tuple(written(value) for value in kept), log=True)
+    return AxisPlan(low, high, kept, tuple(_short(value) for value in kept), log=True)
+
+
+def _short(value: float) -> str:
+    """Settings are spelled out up to 1 000 and then with k, as they are on the bench."""
+    return f"{value / 1000:.3g}k" if value > 1000 else f"{value:.4g}"
 
 
 def written(value: float) -> str:
@@ -102,7 +119,7 @@ def written(value: float) -> str:
     exponent = math.floor(math.log10(abs(value)) + 1e-12)
     if exponent >= 4 or exponent <= -4:
         lead = f"{value / 10.0**exponent:.3g}".replace("-", "−")
-        power = f"10{str(exponent).translate(_SUPERSCRIPTS)}"
+        power = f"10{str(exponent).translate(SUPERSCRIPTS)}"
         return power if lead == "1" else f"{lead}·{power}"
     return f"{value:,.4g}".replace(",", " ").replace("-", "−") if exponent < 3 else f"{value:,.0f}".replace(
         ",", " "

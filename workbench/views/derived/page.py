@@ -1,0 +1,48 @@
+"""All that the first page shows, made together from one choice."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from workbench.views.colours import Look, alloy_looks
+from workbench.views.derived.index import RunIndex
+from workbench.views.derived.loops import LoopFamily, loop_family
+from workbench.views.derived.lossmap import LossMap, loss_map
+from workbench.views.derived.permeability import PermeabilityCurves, permeability_curves
+from workbench.views.derived.readout import Readout, readout, status_sentence
+from workbench.views.selection import Choice
+
+
+@dataclass(frozen=True, eq=False)
+class Page:
+    """Three panes, their key, the readout and one sentence."""
+
+    choice: Choice
+    loops: LoopFamily
+    permeability: PermeabilityCurves
+    map: LossMap
+    readout: Readout
+    key: tuple[tuple[str, Look, str], ...]
+    """(alloy, how it is drawn, its chosen specimens) in the order of the store."""
+    status: str
+
+
+def page(index: RunIndex, choice: Choice) -> Page:
+    """The page of a settled choice of at least one specimen."""
+    return Page(
+        choice=choice,
+        loops=loop_family(index, choice),
+        permeability=permeability_curves(index, choice),
+        map=loss_map(index, choice),
+        readout=readout(index, choice),
+        key=_key(index, choice),
+        status=status_sentence(index, choice),
+    )
+
+
+def _key(index: RunIndex, choice: Choice) -> tuple[tuple[str, Look, str], ...]:
+    chosen: dict[str, list[str]] = {}
+    for name in choice.specimens:
+        chosen.setdefault(index.alloy_of(name), []).append(name)
+    looks = alloy_looks(index.alloy_names)
+    return tuple((alloy, look, ", ".join(chosen[alloy])) for alloy, look in looks.items() if alloy in chosen)

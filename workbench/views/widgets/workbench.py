@@ -1,0 +1,152 @@
+"""The workbench: one selection, three panes, a readout, and what to do when something fails."""
+
+from __future__ import annotations
+
+import traceback
+from collections.abc import Mapping
+from dataclasses import asdict
+from typing import Any
+
+import ipywidgets
+import xarray as xr
+
+from workbench.bench.cautions import CAUTIONS
+from workbench.views import markup
+from workbench.views.derived.index import StoreLike, run_index
+from workbench.views.derived.page import Page, page
+from workbench.views.derived.readout import Overview, overview, slice_in_view, status_sentence
+from workbench.views.derived.settle import settled, start
+from workbench.views.figures import fallback
+from workbench.views.selection import Choice, Selection
+from workbench.views.widgets.controls import Controls
+from workbench.views.widgets.lifetime import close_tree, take_over_cell
+from workbench.views.widgets.loops import LoopsPane
+from workbench.views.widgets.lossmap import MapPane
+from workbench.views.widgets.permeability import PermeabilityPane
+from workbench.views.widgets.style import STYLE
+
+STATE_FORMAT = 1
+
+
+class Workbench(ipywidgets.VBox):
+    """Loops, permeability and map of a store side by side over one selection.
+
+    Parameters
+    ----------
+    store : Store                what `workbench.open_store` or `workbench.reduce` gives
+    selection : Selection        where to begin; by default near 23 °C, at low frequency and about 1 T
+
+    Notes
+    -----
+    ``workbench.selection`` holds what is chosen: setting its values moves the panes, each redrawn
+    once, and only where something changed there.
+    """
+
+    def __init__(self, store: StoreLike, selection: Selection | None = None) -> None:
+        self.store = store
+        self.page: Page | None = None
+        self._shown: tuple[Choice, int] | None = None
+        self._rendering = False
+        self.selection = selection or Selection(**asdict(start(run_index(store))))
+        self.panes = (LoopsPane(self._choose), PermeabilityPane(self._choose), MapPane(self._choose))
+        self.controls = Controls(self._choose)
+        self.header, self.alloy_key, self.status, self.failure, self.readout = (ipywidgets.HTML() for _ in range(5))
+        row = ipywidgets.Box(self.panes)
+        row.add_class("wb-panes")
+        sheet = ipywidgets.HTML(STYLE, layout=ipywidgets.Layout(display="none"))
+        super().__init__([sheet, self.header, self.controls, self.alloy_key, row, self.status, self.readout, self.failure])
+        self.add_class("wb-page")
+        self.render()
+        self.selection.observe(self._changed)
+        take_over_cell(str(getattr(store, "path", "")), self)
+
+    def _choose(self, values: dict[str, Any]) -> None:
+        self.selection.choose(**values)
+
+    def _changed(self, _: Any) -> None:
+        # Values changed together arrive one by one, but after all are set: the first call draws
+        # the final state, and the others find nothing new.
+        if not self._rendering:
+            self.render()
+
+    def render(self) -> None:
+        """Draw what has changed in the selection or the store since the last time, once."""
+        state = (self.selection.choice(), self.store.revision)
+        if state == self._shown:
+            return
+        self._rendering = True
+        try:
+            self._show(state[0])
+            self.failure.value = ""
+        except Exception:  # a failed callback must be seen, and the last good picture must stay
+            self._say_failed(state[0])
+        finally:
+            self._rendering = False
+
+    def _show(self, wanted: Choice) -> None:
+        index = run_index(self.store, wanted.show_set_aside)
+        choice = settled(index, wanted)
+        self.selection.choose(**asdict(choice))
+        glance = overview(self.store, index)
+        _say(self.header, markup.header(glance, CAUTIONS))
+        if choice.specimens:
+            made = page(index, choice)
+            for pane, shown in zip(self.panes, (made.loops, made.permeability, made.map), strict=True):
+                pane.show(shown)
+            _say(self.alloy_key, markup.key(made.key, bool(made.map.hole_texts), bool(glance.doubtful)))
+            _say(self.readout, markup.readout_table(made.readout))
+            self.page = made
+        _say(self.status, markup.status(status_sentence(index, choice)))
+        self.controls.show(index, choice)
+        self._shown = (choice, self.store.revision)
+
+    def _say_failed(self, wanted: Choice) -> None:
+        self.failure.value = markup.log(traceback.format_exc())
+        reason = "The choice could not be shown; the last good picture stays. The details are below the table."
+        _say(self.status, markup.status(reason, trouble=True))
+        if self._shown is not None and wanted != self._shown[0]:
+            self.selection.choose(**asdict(self._shown[0]))
+
+    @property
+    def slice(self) -> xr.Dataset:
+        """The runs whose loops are in view, of dim run."""
+        choice = self.selection.choice()
+        index = run_index(self.store, choice.show_set_aside)
+        if self.page is None:
+            return index.runs.isel(run=[])
+        return slice_in_view(index, choice, self.page.loops)
+
+    def state(self) -> dict[str, Any]:
+        """What is chosen, as JSON holds it; `from_state` brings the very view back."""
+        return {"format": STATE_FORMAT, "selection": self.selection.to_dict()}
+
+    @classmethod
+    def from_state(cls, store: StoreLike, state: Mapping[str, Any]) -> Workbench:
+        """The workbench of `state` on a store; what the store no longer has snaps to the nearest."""
+        return cls(store, Selection.from_dict(state["selection"]))
+
+    def close(self) -> None:
+        """Close every model of the workbench, in the kernel and in the browser."""
+        self.selection.unobserve_all()
+        close_tree(self)
+
+    def __repr__(self) -> str:
+        return f"Workbench({len(run_index(self.store).specimens)} specimens)"
+
+    def _repr_mimebundle_(self, **kwargs: Any) -> dict[str, Any]:
+        """The live widget, and a static picture with the readout for where there is no kernel."""
+        bundle = super()._repr_mimebundle_(**kwargs)
+        if bundle is None:
+            bundle = {}
+        bundle["text/plain"] = repr(self)
+        if self.page is not None:
+            bundle["text/html"] = fallback(self.page, self._overview())
+        return dict(bundle)
+
+    def _overview(self) -> Overview:
+        return overview(self.store, run_index(self.store, self.selection.show_set_aside))
+
+
+def _say(line: ipywidgets.HTML, text: str) -> None:
+    if line.value != text:
+        line.value = text
