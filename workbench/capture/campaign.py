@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Literal
 
+from workbench.base.measured import Measured
 from workbench.bench.circuit import Circuit
 from workbench.bench.specimen import Specimen
 
@@ -56,8 +57,8 @@ class Campaign:
     columns: Columns
     circuits: Mapping[str, Circuit]
     specimens: Mapping[str, Specimen]
-    inductors: Mapping[str, float]
-    """Mutual inductance H of each air-cored inductor; NaN where the sheet does not give it."""
+    inductors: Mapping[str, Measured | None]
+    """Mutual inductance H of each air-cored inductor; None where the sheet does not give it."""
     limits: Mapping[str, float]
     runs: tuple[RunLine, ...]
     sheet_text: str
