@@ -48,7 +48,10 @@ def test_top_level() -> None:
 def test_every_dependency_has_its_reason_beside_it() -> None:
     text = (ROOT / "pyproject.toml").read_text(encoding="utf-8")
     project = tomllib.loads(text)["project"]
-    wanted = [*project["dependencies"], *(each for extra in project["optional-dependencies"].values() for each in extra)]
+    wanted = [
+        *project["dependencies"],
+        *(each for extra in project["optional-dependencies"].values() for each in extra),
+    ]
     lines = [line for line in text.splitlines() if re.match(r'\s*"[a-z]', line) and re.search(r"[>=<]", line)]
     for package in wanted:
         line = next(line for line in lines if f'"{package}"' in line)

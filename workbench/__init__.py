@@ -43,7 +43,7 @@ if TYPE_CHECKING:
     from workbench.capture.read import read_campaign
     from workbench.store.open import open_store
     from workbench.store.reduce import reduce
-    from workbench.views.workbench import Workbench
+    from workbench.views.widgets.workbench import Workbench
 
 __version__ = version("bh-loop-workbench")
 __all__ = [
@@ -67,7 +67,7 @@ _LATER = {
     "read_campaign": "workbench.capture.read",
     "reduce": "workbench.store.reduce",
     "open_store": "workbench.store.open",
-    "Workbench": "workbench.views.workbench",
+    "Workbench": "workbench.views.widgets.workbench",
 }
 
 

@@ -8,7 +8,7 @@ import signal
 import subprocess
 import sys
 import tempfile
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from pathlib import Path
 from urllib.parse import quote
@@ -43,10 +43,10 @@ def serve(notebook: Path, say: Callable[[str], None]) -> None:
     browser = has_display(os.environ, sys.platform)
     say("JupyterLab starts in the browser." if browser else "No display here: open the address below in a browser.")
     say("Ctrl-C stops it.")
+    asked: list[int] = []
     with tempfile.TemporaryDirectory(prefix="workbench-") as settings:
         environment = {**os.environ, "JUPYTER_CONFIG_PATH": _config_path(Path(settings))}
-        with subprocess.Popen(_command(notebook, browser), env=environment, stdin=subprocess.DEVNULL) as server:
-            status, asked = _wait(server)
+        status = _run(_command(notebook, browser), environment, asked)
     if status > 0 and not asked:
         raise WorkbenchError(
             f"JupyterLab ended with status {status}; its own message stands above. "
@@ -96,12 +96,17 @@ def _config_path(settings: Path) -> str:
     return os.pathsep.join(filter(None, [os.environ.get("JUPYTER_CONFIG_PATH", ""), str(settings)]))
 
 
-def _wait(server: subprocess.Popen[bytes]) -> tuple[int, bool]:
-    """Exit status of the server, and whether it was asked to stop."""
-    with _passing_on(server) as asked:
+def _run(command: list[str], environment: Mapping[str, str], asked: list[int]) -> int:
+    """Exit status of the server; `asked` takes the signals that it was stopped by."""
+    started: list[subprocess.Popen[bytes]] = []
+    # The signals are caught before the server starts: one that comes in between is passed on as well.
+    with _passing_on(started, asked), subprocess.Popen(command, env=environment, stdin=subprocess.DEVNULL) as server:
+        started.append(server)
+        if asked:
+            server.terminate()
         while True:
             try:
-                return server.wait(), bool(asked)
+                return server.wait()
             except KeyboardInterrupt:
                 # The server has had the same Ctrl-C where it shares the terminal; asking it
                 # once more does no harm where it does not.
@@ -110,12 +115,11 @@ def _wait(server: subprocess.Popen[bytes]) -> tuple[int, bool]:
 
 
 @contextmanager
-def _passing_on(server: subprocess.Popen[bytes]) -> Iterator[list[int]]:
-    asked: list[int] = []
-
+def _passing_on(started: Sequence[subprocess.Popen[bytes]], asked: list[int]) -> Iterator[None]:
     def stop(number: int, _frame: object) -> None:
         asked.append(number)
-        server.terminate()
+        for server in started:
+            server.terminate()
 
     before = {number: signal.getsignal(number) for number in _STOPPING}
     for number in _STOPPING:
@@ -123,7 +127,7 @@ def _passing_on(server: subprocess.Popen[bytes]) -> Iterator[list[int]]:
         if before[number] is not signal.SIG_IGN:
             signal.signal(number, stop)
     try:
-        yield asked
+        yield
     finally:
         for number, handler in before.items():
             signal.signal(number, handler)
