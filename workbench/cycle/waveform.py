@@ -128,14 +128,15 @@ def mean_cycle(samples: Floats, sample_rate: float, expected: float) -> Waveform
     highest = min(HIGHEST_HARMONIC, int(0.45 * per_cycle / factor))
     response = _block_response(factor, per_sample, highest)
     folded, weight_variance = _fold(averaged, position, total, highest)
-    noise = _sample_noise(averaged, folded, position)
+    rest = averaged - periodic(folded, position)
+    noise = _sample_noise(rest, highest)
     harmonic_noise = noise * np.sqrt(weight_variance)
     kept = _kept_harmonics(folded, harmonic_noise)
     cycles = whole_cycles(total)
     return Waveform(
         frequency=per_sample * sample_rate, cycles=total, samples_per_cycle=per_cycle,
         harmonics=folded / response, noise=noise * np.sqrt(factor), harmonic_noise=harmonic_noise,
-        levels=_cycle_means(averaged, position, cycles), end_gap=end_gap,
+        levels=_cycle_means(rest, position, cycles), end_gap=end_gap,
         gap_noise=gap_noise * noise * np.sqrt(factor), kept=kept,
         windows=_windows(averaged, position, cycles, response),
     )  # fmt: skip
@@ -219,11 +220,10 @@ def _fold(samples: Floats, position: Floats, total: float, highest: int) -> tupl
     return sums[:, 1:] / weight.sum(), float(np.sum(weight**2) / weight.sum() ** 2)
 
 
-def _sample_noise(samples: Floats, folded: Complexes, position: Floats) -> Floats:
+def _sample_noise(rest: Floats, highest: int) -> Floats:
     """Standard deviation of what the mean cycle leaves, dims (channel)."""
-    rest = samples - periodic(folded, position)
     # Differences do not see offset and drift; the periodic part took one value a harmonic away.
-    share = 1 - min(0.9, 2 * folded.shape[1] / samples.shape[1])
+    share = 1 - min(0.9, 2 * highest / rest.shape[1])
     return np.asarray(np.std(np.diff(rest, axis=1), axis=1) / np.sqrt(2 * share))
 
 
@@ -237,13 +237,17 @@ def _kept_harmonics(folded: Complexes, harmonic_noise: Floats) -> npt.NDArray[np
     return np.minimum(highest, np.maximum((last + _BAND // 2) * 3 // 2, _BAND))
 
 
-def _cycle_means(samples: Floats, position: Floats, cycles: int) -> Floats:
-    """Mean of each whole cycle, dims (channel, cycle)."""
+def _cycle_means(rest: Floats, position: Floats, cycles: int) -> Floats:
+    """Mean of each whole cycle, dims (channel, cycle), of what the mean cycle leaves.
+
+    The mean cycle itself has to be off first: a cycle that holds one sample more or less than its
+    fellows would show that sample as a shift of its mean.
+    """
     if cycles < 1:
-        return samples.mean(axis=1, keepdims=True)
+        return rest.mean(axis=1, keepdims=True)
     edges = np.searchsorted(position, np.arange(cycles))
     ends = np.append(edges[1:], np.searchsorted(position, cycles))
-    return np.add.reduceat(samples[:, : ends[-1]], edges, axis=1) / (ends - edges)
+    return np.add.reduceat(rest[:, : ends[-1]], edges, axis=1) / (ends - edges)
 
 
 @lru_cache(maxsize=256)
