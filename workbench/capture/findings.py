@@ -99,6 +99,13 @@ def text(value: Any) -> str:
     return value
 
 
+def filled_text(value: Any) -> str:
+    """A text in quotes that says something."""
+    if not text(value).strip():
+        raise refuse("a text in quotes that is not blank", shown(value))
+    return str(value)
+
+
 def one_of(value: Any, choices: tuple[str, ...]) -> str:
     """One of the known words."""
     if value not in choices:

@@ -98,24 +98,26 @@ class _Body:
 
     def column(self, at: int, values: Floats, is_time: bool) -> Column:
         """One column with its unit and the smallest step it can hold."""
-        head, tail = self._digits(at)
+        sizes = np.abs(values)
         if is_time:
             # Printed with some significant digits, late times are coarser than early ones.
-            step = max(head, tail, float(np.spacing(np.abs(values).max())))
+            step = max(self._digit(at, 0.0), self._digit(at, 1.0), float(np.spacing(sizes.max())))
         else:
-            step = max(min(head, tail), smallest_step(values))
+            # Likewise for a wave: the digit that counts is that of its tips.
+            step = max(self._digit(at, float(sizes.argmax()) / len(sizes)), smallest_step(values))
         return Column(self.layout.names[at], values, self.layout.units[at], step)
 
-    def _digits(self, at: int) -> tuple[float, float]:
-        """Finest printed digit among the first and among the last rows."""
-        finest = []
-        for text in (self.text[: 100 * _LOOKED_AT], self.text[-100 * _LOOKED_AT :]):
-            # The piece may begin or end inside a line: its outermost lines are left out.
-            lines = split_lines(text)[1:-1] or split_lines(text)
-            rows = [split_cells(line, self.layout.separator) for line in lines[:_LOOKED_AT] if not is_remark(line)]
-            digits = [printed_digit(row[at], self.layout.decimal) for row in rows if len(row) > at]
-            finest.append(min((digit for digit in digits if digit), default=0.0))
-        return finest[0], finest[1]
+    def _digit(self, at: int, part: float) -> float:
+        """Finest printed digit among some rows at a part of the way through the text."""
+        size = 50 * _LOOKED_AT
+        middle = int(part * len(self.text))
+        piece = self.text[max(0, min(middle, len(self.text) - size) - size) : middle + size]
+        # The piece may begin or end inside a line: its outermost lines are left out.
+        lines = split_lines(piece)[1:-1] or split_lines(piece)
+        skip = max(0, (len(lines) - _LOOKED_AT) // 2)
+        rows = [split_cells(line, self.layout.separator) for line in lines[skip : skip + _LOOKED_AT]]
+        digits = [printed_digit(row[at], self.layout.decimal) for row in rows if len(row) > at]
+        return min((digit for digit in digits if digit), default=0.0)
 
     def _diagnosis(self, otherwise: str) -> CaptureError:
         """The first row that cannot be used, and why."""

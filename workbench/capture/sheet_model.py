@@ -10,7 +10,7 @@ from pydantic import BaseModel, BeforeValidator, ConfigDict, Field
 
 from workbench.base.errors import QuantityError
 from workbench.base.measured import Measured, parse_quantity
-from workbench.capture.findings import one_of, quantity, refuse, shown, text, whole_number
+from workbench.capture.findings import filled_text, one_of, quantity, refuse, shown, text, whole_number
 
 SHEET_FORMAT = 1
 
@@ -19,6 +19,7 @@ def _check(*arguments: Any, **keywords: Any) -> BeforeValidator:
 
 
 Text = Annotated[str, BeforeValidator(text)]
+Named = Annotated[str, BeforeValidator(filled_text)]
 Turns = Annotated[int, BeforeValidator(whole_number)]
 Length = Annotated[Measured, _check("m", "40.02(2) mm")]
 Area = Annotated[Measured, _check("m^2", "20.0(1) mm^2")]
@@ -157,7 +158,7 @@ MATERIAL_CLASSES = ("electrical steel", "ferrite", "other")
 class SpecimenTable(_Table):
     """One specimen.  Which dimensions go together is checked apart."""
 
-    alloy: Text
+    alloy: Named
     condition: Text = ""
     primary_turns: Turns
     secondary_turns: Turns
