@@ -11,7 +11,7 @@ from workbench.cycle.spread import harmonic_sums, periodic
 Floats = npt.NDArray[np.float64]
 Complexes = npt.NDArray[np.complex128]
 
-SEARCH_HARMONICS = 40
+SEARCH_HARMONICS = 60
 """Harmonics in the search for the frequency: more change its result by less than the noise."""
 
 

@@ -92,10 +92,10 @@ class Crossings:
     shape: tuple[int, ...]
     """The leading dims."""
 
-    def sums(self, weight: Floats) -> Floats:
+    def sums(self, weight: npt.NDArray[np.floating]) -> Floats:
         """Sum of weight over the crossings of each row, in the leading dims' shape."""
         count = int(np.prod(self.shape, dtype=int))
-        return np.bincount(self.row, weight, minlength=count).reshape(self.shape)
+        return np.asarray(np.bincount(self.row, weight, minlength=count), float).reshape(self.shape)
 
 
 def crossings(wave: Floats, other: Floats) -> Crossings:
