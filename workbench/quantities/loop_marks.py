@@ -19,6 +19,8 @@ _DISTORTION_LIMIT = 0.05
 """Of the secondary's voltage: a form factor alone is blind to a third harmonic in quadrature."""
 QUASI_STATIC_BELOW = 20.0
 """Hz.  IEC 60404-6 covers 20 Hz to 100 kHz; below, IEC 60404-4."""
+_CHANCE = 3.0
+"""Standard uncertainties that noise alone may explain."""
 _AC_RING = 1.4
 _AC_RING_REMARK = 1.25
 
@@ -31,7 +33,7 @@ def loop_marks(loop: Loop, figures: Figures, line: RunLine, limit: Limits) -> Se
     return {
         **_steadiness(loop, figures, limit),
         **_waveform(figures, limit),
-        **_symmetry(loop, limit),
+        **_symmetry(loop, figures, limit),
         **_loss(loop, figures, limit),
         **_specimen(loop, figures, limit, line),
         **_setting(figures, line, limit),
@@ -85,12 +87,14 @@ def _waveform(figures: Figures, limit: Limits) -> Seen:
     return {}
 
 
-def _symmetry(loop: Loop, limit: Limits) -> Seen:
+def _symmetry(loop: Loop, figures: Figures, limit: Limits) -> Seen:
     seen: Seen = {}
     field, induction = waves(above_noise(loop.harmonics, loop.kept), DENSE, loop.single)
     rising, falling = (float(side[0]) for side in coercive_fields(field, induction))
     mean = abs(rising + falling) / 2
-    if mean > 0 and abs(rising - falling) / mean > limit["biased"]:
+    # The difference of the two is twice as noisy as half their sum, the coercivity.
+    by_chance = _CHANCE * 2 * figures.budget["coercivity"]["scatter"]
+    if abs(rising - falling) > limit["biased"] * mean + by_chance:
         seen["biased"] = f"Hc is {rising:.4g} A/m rising and {falling:.4g} A/m falling"
     for name, wave in (("H", field), ("B", induction)):
         count = int(count_crossings(wave)[0])
