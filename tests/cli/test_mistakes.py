@@ -70,7 +70,8 @@ def test_a_bad_sheet_stops_reduce_and_open_with_all_findings(workbench: Run, cam
 
 
 def test_a_name_from_the_sheet_stays_letters(workbench: Run, campaign: Path) -> None:
-    for file, old, new in (("campaign.toml", "specimens.P1", f'specimens."{HOSTILE}"'), ("runs.csv", ",P1,", f",{HOSTILE},")):
+    sheet, lines = ("campaign.toml", "specimens.P1", f'specimens."{HOSTILE}"'), ("runs.csv", ",P1,", f",{HOSTILE},")
+    for file, old, new in (sheet, lines):
         text = (campaign / file).read_text(encoding="utf-8")
         assert old in text
         (campaign / file).write_text(text.replace(old, new), encoding="utf-8")

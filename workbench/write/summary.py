@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections import Counter
 
 import numpy as np
@@ -12,6 +13,7 @@ from workbench.quantities.mark_table import MARKS
 from workbench.store.open import Store
 from workbench.write.plain import printable
 
+_VOLTAGE = re.compile(r"(?P<where>.*): (?P<volts>[\d.e+]+) V (?P<kind>rms|peak|dc) ")
 _RANGES = ("peak_field", "peak_induction", "frequency", "temperature")
 
 
@@ -19,7 +21,7 @@ def summary(store: Store) -> list[str]:
     """Plain lines, uncut: the first says how much there is, the last ones what failed."""
     runs = store.runs
     return [
-        f"{store.title}: {_count(runs.sizes['run'], 'run')} of {_count(len(set(runs['specimen'].values)), 'specimen')}",
+        f"{printable(store.title)}: {_count(runs.sizes['run'], 'run')} of {_count(len(set(runs['specimen'].values)), 'specimen')}",
         *_ranges(runs),
         *_standing(runs),
         *_marks(runs),
@@ -73,5 +75,12 @@ def _marks(runs: xr.Dataset) -> list[str]:
 
 
 def _cautions(runs: xr.Dataset) -> list[str]:
-    counted = Counter(line for text in runs["cautions"].values for line in str(text).split("\n") if line)
-    return [f"caution: {printable(line)} ({_count(count, 'run')})" for line, count in counted.most_common()]
+    # One line a winding and kind of voltage, that of the highest: every run has its own voltage.
+    highest: dict[str, tuple[float, str]] = {}
+    counted: Counter[str] = Counter()
+    for line in (line for text in runs["cautions"].values for line in str(text).split("\n") if line):
+        found = _VOLTAGE.match(line)
+        topic, volts = (found["where"] + found["kind"], float(found["volts"])) if found else (line, 0.0)
+        highest[topic] = max(highest.get(topic, (volts, line)), (volts, line))
+        counted[topic] += 1
+    return [f"caution: {printable(line)} ({_count(counted[topic], 'run')})" for topic, (_, line) in highest.items()]
