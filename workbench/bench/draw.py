@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from typing import Any
 
 import numpy as np
 
@@ -24,8 +25,8 @@ def drawn(sheet: Measured, generator: np.random.Generator) -> Measured:
 
 def drawn_specimen(specimen: Specimen, generator: np.random.Generator) -> Specimen:
     """The specimen with true scalars in place of the sheet's."""
-    scalars = specimen.scalars()
-    return replace(specimen, **{name: drawn(sheet, generator) for name, sheet in scalars.items()})
+    scalars: dict[str, Any] = {name: drawn(sheet, generator) for name, sheet in specimen.scalars().items()}
+    return replace(specimen, **scalars)
 
 
 def drawn_circuit(circuit: Circuit, generator: np.random.Generator) -> Circuit:
