@@ -9,8 +9,6 @@ The map, in the order in which data flow; a folder imports only from those above
 - ``loop``        H and B on phase: circuit undone, ring applied, polarity
 - ``quantities``  numbers with uncertainty, marks, the reduction of one run
 - ``store``       runs, curves and cube on disk; a campaign reduced into it
-- ``theory``      why: where the loss comes from
-- ``verdict``     which: alloys held against a purpose
 - ``views``       what one sees: selection, derived arrays, figures, widgets
 - ``write``       what leaves the bench: hand-off folder, tables, notebooks
 - ``cli``         the command line

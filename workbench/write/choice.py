@@ -58,15 +58,21 @@ def chosen(runs: xr.Dataset, choice: Choice) -> xr.Dataset:
 
 
 def _matches(name: str, have: np.ndarray, wanted: Sequence[str] | Sequence[float]) -> np.ndarray:
-    hits = [_equal(have, each) for each in wanted]
-    for each, hit in zip(wanted, hits, strict=True):
-        if not hit.any():
-            known = sorted(set(have[have == have].tolist()))  # NaN, the setting not used, is not itself
-            raise HandoffError(
-                f"Choosing runs for a hand-off, {name}: wanted one that was measured; found {_shown(name, each)}. "
-                + nearest(_shown(name, each), [_shown(name, value) for value in known])
-            )
-    return np.any(hits, axis=0) if hits else np.zeros(have.shape, bool)
+    matches = np.zeros(have.shape, bool)
+    for each in wanted:
+        hits = _equal(have, each)
+        if not hits.any():
+            raise _not_measured(name, each, have)
+        matches |= hits
+    return matches
+
+
+def _not_measured(name: str, wanted: str | float, have: np.ndarray) -> HandoffError:
+    known = sorted(set(have[have == have].tolist()))  # NaN, the setting not used, is not itself
+    return HandoffError(
+        f"Choosing runs for a hand-off, {name}: wanted one that was measured; found {_shown(name, wanted)}. "
+        + nearest(_shown(name, wanted), [_shown(name, value) for value in known])
+    )
 
 
 def _equal(have: np.ndarray, wanted: str | float) -> np.ndarray:

@@ -20,8 +20,9 @@ _RANGES = ("peak_field", "peak_induction", "frequency", "temperature")
 def summary(store: Store) -> list[str]:
     """Plain lines, uncut: the first says how much there is, the last ones what failed."""
     runs = store.runs
+    specimens = len(set(runs["specimen"].values))
     return [
-        f"{printable(store.title)}: {_count(runs.sizes['run'], 'run')} of {_count(len(set(runs['specimen'].values)), 'specimen')}",
+        f"{printable(store.title)}: {_count(runs.sizes['run'], 'run')} of {_count(specimens, 'specimen')}",
         *_ranges(runs),
         *_standing(runs),
         *_marks(runs),
