@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 from pathlib import Path
+from types import SimpleNamespace
 
 import numpy as np
 import pandas as pd
@@ -80,7 +81,7 @@ def ellipse_runs() -> xr.Dataset:
     return runs
 
 
-@dataclass
+@dataclass(eq=False)
 class EllipseStore:
     """Answers what `write` asks of a store."""
 
@@ -94,6 +95,18 @@ class EllipseStore:
             [("captures/bad.csv", "the file is empty", "Record it again")], columns=["capture", "reason", "remedy"]
         )
     )
+
+    def pointers(self, include_set_aside: bool = False) -> SimpleNamespace:
+        """The pointer cube: rows of the runs by specimen, peak, frequency, temperature."""
+        runs = self.runs
+        shape = (len(SPECIMENS), len(PEAKS), len(FREQUENCIES), 1)
+        rows = np.arange(runs.sizes["run"], dtype=np.int32)
+        if not include_set_aside:
+            rows[runs["standing"].values != "kept"] = -1
+        return SimpleNamespace(
+            specimens=SPECIMENS, peaks=np.array(PEAKS), frequencies=np.array(FREQUENCIES),
+            temperatures=np.array([23.0]), rows=rows.reshape(shape), peak_name="peak_field",
+        )  # fmt: skip
 
 
 @pytest.fixture

@@ -18,8 +18,16 @@ def test_notebook_names_the_store_relative_to_itself(store: Any, tmp_path: Path)
     book = nbformat.read(path, as_version=4)
     nbformat.validate(book)
     assert 'open_store("ellipses.store")'.replace('"', "'") in book.cells[-1].source
-    assert not any(cell.get("outputs") for cell in book.cells)
     assert book.metadata["kernelspec"]["name"] == "python3"
+
+
+def test_notebook_shows_a_still_picture_before_it_is_run(store: Any, tmp_path: Path) -> None:
+    book = nbformat.read(opening_notebook(store, tmp_path / "ellipses.ipynb"), as_version=4)
+    (output,) = book.cells[-1].outputs
+    shown = output["data"]["text/html"]
+    assert '<img src="data:image/svg+xml;base64,' in shown
+    assert "onerror" in shown, "the hostile name is there"
+    assert "<img src=x" not in shown, "as letters only"
 
 
 def test_a_name_with_quotes_is_still_python(store: Any, tmp_path: Path) -> None:

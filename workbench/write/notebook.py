@@ -10,12 +10,18 @@ import nbformat
 
 from workbench.base.errors import StoreError
 from workbench.store.open import Store
+from workbench.views.derived.index import run_index
+from workbench.views.derived.page import page
+from workbench.views.derived.readout import overview
+from workbench.views.derived.settle import start
+from workbench.views.figures import fallback
 
 _ABOUT = """\
 # The workbench on this campaign
 
-The cell below opens the store and shows the workbench. `store.runs` and `store.cube()` are xarray Datasets of the same
-figures, `store.failures` lists the captures that could not be used. This notebook is yours: it is never overwritten."""
+Click the cell below and press Shift+Enter: it opens the store and shows the workbench. Until then there is a still
+picture, of the day this notebook was written. `store.runs` and `store.cube()` are xarray Datasets of the same figures,
+`store.failures` lists the captures that could not be used. This notebook is yours: it is never overwritten."""
 _OPEN = """\
 import workbench
 
@@ -50,9 +56,12 @@ def opening_notebook(store: Store, path: str | os.PathLike[str]) -> Path:
     """
     where = Path(path)
     name = os.path.relpath(Path(store.path).resolve(), where.resolve().parent)
+    if where.exists():
+        return where
     book = notebook_of(("markdown", _ABOUT), ("code", _OPEN.format(name=Path(name).as_posix())))
+    book.cells[-1].outputs = _still_picture(store)
     try:
-        # "x" and not a look before: two starts at once must not overwrite each other's.
+        # "x", although there was none a moment ago: two starts at once must not overwrite each other's.
         with where.open("x", encoding="utf-8") as file:
             nbformat.write(book, file)
     except FileExistsError:
@@ -62,3 +71,14 @@ def opening_notebook(store: Store, path: str | os.PathLike[str]) -> Path:
             f"Writing the notebook {where}: {error.strerror}. Reduce into a folder where you may write (--into)."
         ) from error
     return where
+
+
+def _still_picture(store: Store) -> list[Any]:
+    # As the cell's own output, so that the workbench takes its place when the cell is run.
+    index = run_index(store)
+    choice = start(index)
+    if not choice.specimens:
+        return []
+    html = fallback(page(index, choice), overview(store, index))
+    plain = "The workbench; this is a still picture."
+    return [nbformat.v4.new_output("display_data", {"text/html": html, "text/plain": plain})]
