@@ -34,7 +34,8 @@ def worst(found: Waveform) -> float:
 def test_amplitudes_of_a_non_coherent_record(samples: int, cycles: float) -> None:
     found = mean_cycle(record(samples, cycles), 50 * samples / cycles, 50.4)
     assert found.frequency == pytest.approx(50, rel=1e-8)
-    assert worst(found) < 1e-6
+    # The spline leaves an image of coherent sampling up to (255/3841)^4 = 2e-5 of a harmonic.
+    assert worst(found) < 2e-5
 
 
 @pytest.mark.parametrize("cycles", [2.7, 2.0, 1.6])

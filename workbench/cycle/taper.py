@@ -40,7 +40,7 @@ def taper(position: Floats, cycles: int, order: int) -> Floats:
 
     Parameters
     ----------
-    position : array      cycles since the first sample
+    position : array      cycles since the first sample, increasing, from 0 to about `cycles` and beyond
     cycles : int          > order
     order : int           1, 2 or 3
 
@@ -49,7 +49,11 @@ def taper(position: Floats, cycles: int, order: int) -> Floats:
     >>> taper(np.array([0.0, 0.5, 1.0, 1.5, 2.0]), cycles=2, order=1).tolist()
     [0.0, 0.5, 1.0, 0.5, 0.0]
     """
-    return ramp(position, order) - ramp(position - (cycles - order), order)
+    weight = np.ones_like(position)
+    rise, fall = np.searchsorted(position, [order, cycles - order])
+    weight[:rise] = ramp(position[:rise], order)
+    weight[fall:] *= ramp(cycles - position[fall:], order)
+    return weight
 
 
 def order_for(cycles: int) -> int:

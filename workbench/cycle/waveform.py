@@ -22,7 +22,7 @@ HIGHEST_HARMONIC = 255
 """A stored loop has 512 points: it cannot hold more."""
 FEWEST_SAMPLES = 8
 """Samples a cycle below which not even the third harmonic is safe from the sampling."""
-_POINTS_KEPT = 640
+_POINTS_KEPT = 512
 """Samples a cycle to which a denser record is averaged down before it is folded."""
 _ONE_CYCLE = 1.1
 """Up to here a record is taken as one cycle whose ends are brought together."""
@@ -200,7 +200,8 @@ def _block_means(samples: Floats, factor: int) -> Floats:
     if factor == 1:
         return samples
     count = samples.shape[1] // factor
-    return samples[:, : count * factor].reshape(len(samples), count, factor).mean(axis=2)
+    # A product with ones is several times faster than a mean over a short axis.
+    return samples[:, : count * factor].reshape(len(samples), count, factor) @ np.full(factor, 1 / factor)
 
 
 def _block_response(factor: int, per_sample: float, highest: int) -> Floats:

@@ -56,12 +56,13 @@ def figures(loop: Loop, steps: tuple[float, float]) -> Figures:
     found = _all_variants(loop, uncertain, np.concatenate([spectra, coarse]))
     pairs, tail = 2 * len(uncertain), 1 + 2 * len(uncertain)
     values, budget, degrees = {}, {}, {}
+    few = float(enlargement(dof))
     for name, series in found.items():
         values[name] = float(series[0])
         half = (series[1 : 1 + pairs : 2] - series[2 : 2 + pairs : 2]) / 2
         shares = {source: float(share) for source, share in zip(uncertain, half, strict=True) if share != 0}
         scatter = factor * float(np.std(series[tail : tail + len(spectra)], ddof=1))
-        enlarged = scatter * float(enlargement(dof))
+        enlarged = scatter * few
         parts = {**shares, "scatter": enlarged}
         if len(coarse):
             parts["quantisation"] = float(np.std(series[tail + len(spectra) :], ddof=1))
