@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from contextlib import nullcontext
 from functools import lru_cache
+from typing import Any
 
 import pint
 
@@ -20,6 +22,15 @@ def registry() -> pint.UnitRegistry:
 def _spelled(unit: str) -> str:
     # "Ω·cm" and "°C" are how people write; pint wants its own spelling.
     return unit.strip().replace("·", "*").replace("⋅", "*").replace("°C", "degC").replace("Ohm", "ohm")
+
+
+def _is_gaussian(parsed: Any, si_unit: str) -> bool:
+    # The context would also take T to A/m, and Oe and G for each other: only units whose dimensions
+    # have halves in them, as those of Gauss have, may use it, and H and B are kept apart by name.
+    other = {"A/m": "gauss", "T": "oersted"}.get(si_unit)
+    if other and other in str(parsed):
+        return False
+    return any(exponent % 1 for exponent in parsed.dimensionality.values())
 
 
 @lru_cache(maxsize=1024)
@@ -40,9 +51,10 @@ def conversion(unit: str, si_unit: str) -> tuple[float, float]:
     units = registry()
     wanted = f"a unit that converts to {si_unit or '1 (no unit)'}"
     try:
-        with units.context("Gaussian"):
-            at_zero = units.Quantity(0.0, _spelled(unit)).to(si_unit).magnitude
-            at_one = units.Quantity(1.0, _spelled(unit)).to(si_unit).magnitude
+        parsed = units.parse_units(_spelled(unit))
+        with units.context("Gaussian") if _is_gaussian(parsed, si_unit) else nullcontext():
+            at_zero = units.Quantity(0.0, parsed).to(si_unit).magnitude
+            at_one = units.Quantity(1.0, parsed).to(si_unit).magnitude
     except pint.DimensionalityError as error:
         raise QuantityError(wanted, f"'{unit}', which is {error.dim1 or 'dimensionless'}") from error
     except Exception as error:  # pint raises many kinds for text that is no unit

@@ -67,8 +67,8 @@ def look(text: str, columns: Columns) -> Layout:
     header = _header(lines, rows, columns, separator)
     first = _first_row(lines, rows, header, width, decimal)
     if header is None:
-        header = _row_above(rows, lines, first, width, decimal)
-    names, units, first = _named(lines, rows, header, first, width, decimal, columns)
+        header = _row_above(rows, lines, first, width)
+    names, units, first = _named(lines, rows, header, first, width, columns)
     if first >= len(lines):
         raise CaptureError("there is a header and no samples", "Repeat the export, or the run.")
     return Layout(separator, decimal, names, units, found[first][0], first + 1, tuple(lines[:first]))
@@ -79,27 +79,21 @@ def _dialect(lines: list[str]) -> tuple[str, str, int]:
     sample = [line for line in lines if not is_remark(line)][-_SAMPLE:]
     best, best_score = (",", ".", 0), 0
     for separator, decimal in _DIALECTS:
-        widths = Counter(_width(split_cells(line, separator), decimal) for line in sample)
-        widths.pop(0, None)
-        if not widths:
-            continue
-        width, count = max(widths.items(), key=lambda item: item[0] * item[1])
-        if width * count > best_score:
-            best, best_score = (separator, decimal, width), width * count
+        scores: Counter[int] = Counter()
+        for line in sample:
+            cells = _trimmed(split_cells(line, separator))
+            scores[len(cells)] += max(0, _numbers(cells, decimal))
+        width, score = scores.most_common(1)[0] if scores else (0, 0)
+        if score > best_score:
+            best, best_score = (separator, decimal, width), score
     return best
 
 
-def _width(cells: tuple[str, ...] | list[str], decimal: str) -> int:
-    """Number of cells of a row of numbers; 0 for any other row."""
-    filled = _trimmed(cells)
-    if not filled or not any(plain_number(cell, decimal) is not None for cell in filled):
-        return 0
-    return len(filled) if all(_number_like(cell, decimal) for cell in filled) else 0
-
-
-def _number_like(cell: str, decimal: str) -> bool:
-    # A gap or "NaN" in a row of numbers is a fault of that row, and no sign of a header.
-    return cell.lower().lstrip("+-") in ("", "nan", "inf", "infinity") or plain_number(cell, decimal) is not None
+def _numbers(cells: list[str], decimal: str) -> int:
+    """Cells that are numbers, less those that are words; a gap or "NaN" is neither: it is a fault of that row."""
+    words = sum(cell.lower().lstrip("+-") not in ("", "nan", "inf", "infinity") for cell in cells)
+    numbers = sum(plain_number(cell, decimal) is not None for cell in cells)
+    return 2 * numbers - words
 
 
 def _trimmed(cells: tuple[str, ...] | list[str]) -> list[str]:
@@ -133,13 +127,14 @@ def _first_row(lines: list[str], rows: list[list[str]], header: int | None, widt
     """The line after the header, or the first row that holds any number among `width` cells."""
     if header is not None:
         return _next(lines, header + 1)
-    # A broken row of numbers (a word in it) is the first row all the same: it must be seen.
-    for at, cells in enumerate(rows):
-        if not is_remark(lines[at]) and len(_trimmed(cells)) == width:
-            numbers = sum(plain_number(cell, decimal) is not None for cell in cells)
-            if numbers and (numbers * 2 >= width or _width(cells, decimal)):
-                return at
-    return len(lines)
+    wide = [at for at, cells in enumerate(rows) if len(_trimmed(cells)) == width and not is_remark(lines[at])]
+    first = next((at for at in wide if _numbers(rows[at], decimal) > 0), len(lines))
+    # A broken row of numbers (a word in it) above belongs to them all the same: it must be seen.
+    for at in reversed([at for at in wide if at < first]):
+        if not any(plain_number(cell, decimal) is not None for cell in rows[at]):
+            break
+        first = at
+    return first
 
 
 def _next(lines: list[str], at: int) -> int:
@@ -148,7 +143,7 @@ def _next(lines: list[str], at: int) -> int:
     return at
 
 
-def _row_above(rows: list[list[str]], lines: list[str], first: int, width: int, decimal: str) -> int | None:
+def _row_above(rows: list[list[str]], lines: list[str], first: int, width: int) -> int | None:
     """The nearest line above the numbers with a name for each column; a row of units is passed over."""
     above = [at for at in range(first) if len(_trimmed(rows[at])) == width and not is_remark(lines[at])]
     if len(above) > 1 and _all_units(rows[above[-1]]):
@@ -180,7 +175,7 @@ def _is_unit(text: str) -> bool:
 
 
 def _named(
-    lines: list[str], rows: list[list[str]], header: int | None, first: int, width: int, decimal: str, columns: Columns
+    lines: list[str], rows: list[list[str]], header: int | None, first: int, width: int, columns: Columns
 ) -> tuple[tuple[str, ...], tuple[str, ...], int]:
     """Names, units, and the first row of numbers once a row of units is passed."""
     if header is None:
@@ -189,7 +184,7 @@ def _named(
     names = _trimmed(rows[header])
     units = [split_header(name)[1] or "" for name in names]
     below = _next(lines, header + 1)
-    if below < len(rows) and not _width(rows[below], decimal) and _all_units(rows[below]):
+    if below < len(rows) and _all_units(rows[below]):
         row = [_bare(cell) for cell in rows[below]] + [""] * len(names)
         units = [unit or row[at] for at, unit in enumerate(units)]
         first = _next(lines, below + 1)

@@ -108,7 +108,7 @@ def _broken(error: Exception) -> Finding:
     place = re.search(r"\s*\(at (line \d+, column \d+|end of document)\)", message)
     where = f"{SHEET_NAME}, {place[1]}" if place else SHEET_NAME
     plain = message.replace(place[0], "") if place else message
-    return Finding(where, "TOML, e.g. key = \"value\"", plain[:1].lower() + plain[1:])
+    return Finding(where, 'TOML, e.g. key = "value"', plain[:1].lower() + plain[1:])
 
 
 def _checked(raw: dict[str, Any], text: str) -> SheetRead:
@@ -202,6 +202,7 @@ def _sensor_finding(where: str, role: str, error: Any) -> Finding:
 
 def _geometry(name: str, table: dict[str, Any]) -> list[Finding]:
     """Findings about dimensions that only make sense together."""
+
     def at(key: str) -> str:
         return f"{SHEET_NAME}, specimens.{name}.{key}"
 

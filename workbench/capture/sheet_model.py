@@ -14,6 +14,7 @@ from workbench.capture.findings import filled_text, one_of, quantity, refuse, sh
 
 SHEET_FORMAT = 1
 
+
 def _check(*arguments: Any, **keywords: Any) -> BeforeValidator:
     return BeforeValidator(partial(quantity, **dict(zip(("si_unit", "example"), arguments, strict=True)), **keywords))
 
@@ -296,5 +297,3 @@ def model_at(place: tuple[str, ...]) -> type[BaseModel] | None:
         case ("inductors", _):
             return InductorTable
     return None
-
-

@@ -61,7 +61,7 @@ def _uneven(time: Column, where: Callable[[int], str]) -> CaptureError:
     """What is wrong with the steps, the plainest first."""
     steps = np.diff(time.values)
     usual = float(np.median(steps))
-    worst = int(np.argmin(steps))
+    worst = int(np.argmax(steps < 0) if steps.min() < 0 else np.argmin(steps))
     if steps[worst] < 0:
         reason = f"time goes backwards at {where(worst + 1)}: {_pair(time.values, worst)} {time.unit}"
         return CaptureError(reason, "Look whether two records were joined, or repeat the export.")
