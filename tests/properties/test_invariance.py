@@ -58,7 +58,8 @@ def test_amplitude_scales(gain: float, third: float) -> None:
 
 def test_the_same_capture_gives_the_same_figures_to_the_last_bit() -> None:
     record = volts(0.7)
-    noisy = Record(record.field + 1e-4 * np.random.default_rng(0).standard_normal(SAMPLES), record.induction, "V", "V", RATE, "")
+    noise = 1e-4 * np.random.default_rng(0).standard_normal(SAMPLES)
+    noisy = Record(record.field + noise, record.induction, "V", "V", RATE, "")
     first, second = (reduce_record(noisy, LINE, RING, BENCH, {}) for _ in range(2))
     assert first.values == second.values
     assert first.uncertainties == second.uncertainties

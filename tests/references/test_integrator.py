@@ -111,7 +111,8 @@ def test_air_flux() -> None:
     samples, cycles, frequency = 8000, 10, 50.0
     theta = 2 * np.pi * np.arange(samples) * cycles / samples
     coil = Specimen("R", "any", 100, 50, path_length=Measured(0.1), area=Measured(40e-6), coil_area=Measured(60e-6))
-    record = Record(1e4 * np.sin(theta), 1.0 * np.sin(theta) * 50 * 40e-6, "A/m", "Wb", frequency * samples / cycles, "")
+    linkage = 50 * 40e-6 * np.sin(theta)
+    record = Record(1e4 * np.sin(theta), linkage, "A/m", "Wb", frequency * samples / cycles, "")
     circuit = Circuit("main", Channel("shunt", {"resistance": Measured(1.0)}), Channel("winding", {}))
     loop = assemble(record, coil, circuit, frequency)
     assert 1 - 2 * abs(loop.harmonics.induction[0, 0]) == pytest.approx(6.283185e-3, rel=1e-6)

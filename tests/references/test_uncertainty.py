@@ -77,7 +77,9 @@ def test_total_is_the_root_of_the_squares(uncertain_ring) -> None:
         assert found.uncertainties[name] == pytest.approx(np.sqrt(sum(s**2 for s in shares.values())), rel=1e-12)
 
 
-@pytest.mark.parametrize("text", ["40.02(2) mm", "0.4975(5) ohm", "12(5) nH", "0(3) ns", "1.234(12)e-3 m", "7480(15) kg/m^3"])
+@pytest.mark.parametrize(
+    "text", ["40.02(2) mm", "0.4975(5) ohm", "12(5) nH", "0(3) ns", "1.234(12)e-3 m", "7480(15) kg/m^3"]
+)
 def test_concise_notation_against_the_package(text: str) -> None:
     """The number by `uncertainties`, the unit by pint; pint alone is wrong by powers of ten."""
     number, _, unit = text.partition(" ")

@@ -28,7 +28,8 @@ def coarse_frequency(samples: Floats, expected: float) -> float:
     power: a distorted current may have a third harmonic above its fundamental.
     """
     count = samples.shape[1]
-    scaled = (samples - samples.mean(axis=1, keepdims=True)) / samples.std(axis=1, keepdims=True)
+    size = samples.std(axis=1, keepdims=True)
+    scaled = (samples - samples.mean(axis=1, keepdims=True)) / np.where(size > 0, size, 1.0)
     spectrum = np.abs(np.fft.rfft(scaled * np.hanning(count))) ** 2
     power = spectrum.sum(axis=0)
     power[: 2 if count * expected < 6 else 3] = 0  # the taper's own line at zero
@@ -74,7 +75,8 @@ def fine_frequency(samples: Floats, start: float, rounds: int = 3) -> float:
     True
     """
     frequency = start
-    scale = samples.std(axis=1)
+    size = samples.std(axis=1)
+    scale = np.where(size > 0, size, 1.0)
     for _ in range(rounds):
         # A record cut at exactly n cycles must count n although the frequency is not yet exact.
         cycles = max(ENOUGH_CYCLES, int(samples.shape[1] * frequency + 0.02))

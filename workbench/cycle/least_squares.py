@@ -63,7 +63,8 @@ def misfit(samples: Floats, frequency: float, highest: int, with_drift: bool) ->
     rest = samples - wave
     line = np.vander(position - position.mean(), 2 if with_drift else 1)
     rest = rest - (np.linalg.lstsq(line, rest.T, rcond=None)[0].T @ line.T)
-    return float(np.mean(rest**2 / samples.var(axis=1, keepdims=True)))
+    power = samples.var(axis=1, keepdims=True)
+    return float(np.mean(rest**2 / np.where(power > 0, power, 1.0)))
 
 
 def best_frequency(samples: Floats, expected: float, with_drift: bool) -> float:

@@ -31,8 +31,8 @@ _SEARCH_POINTS = 160
 _LEAST_SQUARES_BELOW = 6
 _BAND = 12
 """Harmonics whose mean power is held against the noise: together they show what one alone does not."""
-_SIGNIFICANT = 1 + 4 / _BAND**0.5
-"""A band counts above this multiple of its noise power, four standard deviations of it."""
+_DEVIATIONS = 4.0
+"""Standard deviations of a band's noise power above which it counts."""
 
 
 @dataclass(frozen=True)
@@ -231,11 +231,12 @@ def _sample_noise(rest: Floats, highest: int) -> Floats:
 def _kept_harmonics(folded: Complexes, harmonic_noise: Floats) -> npt.NDArray[np.intp]:
     """Half again the highest band of harmonics that stands out of the noise, per channel."""
     highest = folded.shape[1]
+    wide = min(_BAND, highest)
     power = np.cumsum(np.pad(np.abs(folded) ** 2, ((0, 0), (1, 0))), axis=1)
-    band = (power[:, _BAND:] - power[:, :-_BAND]) / _BAND
-    clear = band > _SIGNIFICANT * harmonic_noise[:, None] ** 2
+    band = (power[:, wide:] - power[:, :-wide]) / wide
+    clear = band > (1 + _DEVIATIONS / wide**0.5) * harmonic_noise[:, None] ** 2
     last = np.where(clear.any(axis=1), clear.shape[1] - np.argmax(clear[:, ::-1], axis=1), 1)
-    return np.minimum(highest, np.maximum((last + _BAND // 2) * 3 // 2, _BAND))
+    return np.minimum(highest, np.maximum((last + wide // 2) * 3 // 2, wide))
 
 
 def _cycle_means(rest: Floats, position: Floats, cycles: int) -> Floats:

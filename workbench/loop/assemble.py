@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from workbench.base.errors import CaptureError
+from workbench.base.errors import CaptureError, LoopError
 from workbench.bench.circuit import Circuit
 from workbench.bench.specimen import Specimen
 from workbench.capture.record import Record
@@ -62,6 +62,7 @@ def assemble(record: Record, specimen: Specimen, circuit: Circuit, frequency: fl
     setup = setup_of(record, specimen, circuit)
     samples = np.stack([record.field, record.induction])
     waveform = mean_cycle(samples, record.sample_rate, frequency)
+    _insist_on_a_fundamental(waveform, samples)
     omega = 2 * np.pi * waveform.frequency * np.arange(1, waveform.harmonics.shape[1] + 1)
     first = undo(waveform.harmonics[None], omega, setup, nominal_inputs(setup))
     # sin(theta) has the two-sided amplitude -j/2: turn the fundamental of B to that direction.
@@ -72,6 +73,20 @@ def assemble(record: Record, specimen: Specimen, circuit: Circuit, frequency: fl
     )
     single = bool(np.any(waveform.end_gap != 0))
     return Loop(waveform, setup, waveform.harmonics * turn, turn, turned, single)
+
+
+def _insist_on_a_fundamental(waveform: Waveform, samples: Floats) -> None:
+    fundamental = np.abs(waveform.harmonics[:, 0])
+    least = np.maximum(5 * waveform.harmonic_noise, 1e-3 * samples.std(axis=1))
+    least = np.maximum(least, 1e-9 * np.abs(samples).max(axis=1))  # what rounding leaves of a constant
+    for name, amplitude, wanted in zip(("field", "induction"), fundamental, least, strict=True):
+        # "not above" also catches NaN, which compares false with everything.
+        if not amplitude > wanted:
+            raise LoopError(
+                f"the {name} channel carries no fundamental at {waveform.frequency:.6g} Hz: "
+                f"amplitude {2 * amplitude:.3g}, wanted above {2 * wanted:.3g}",
+                "Look at the channel's lead and range, and at the frequency in runs.csv.",
+            )
 
 
 def setup_of(record: Record, specimen: Specimen, circuit: Circuit) -> Setup:

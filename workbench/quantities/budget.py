@@ -14,7 +14,7 @@ from workbench.base.uncertainty import effective_dof, enlargement
 from workbench.base.vocabulary import QUANTITIES
 from workbench.loop.assemble import Loop
 from workbench.loop.undo import nominal_inputs
-from workbench.quantities.evaluate import evaluate
+from workbench.quantities.evaluate import evaluate, point_noise
 
 Floats = npt.NDArray[np.float64]
 Complexes = npt.NDArray[np.complex128]
@@ -33,6 +33,8 @@ class Figures:
     budget: dict[str, dict[str, float]]
     windows: dict[str, Floats]
     """Each quantity in each window (or draw), for the steadiness of the tips."""
+    noise: tuple[float, float]
+    """Noise of one phase point of H, A/m, and of B, T."""
 
 
 def figures(loop: Loop, steps: tuple[float, float]) -> Figures:
@@ -53,7 +55,8 @@ def figures(loop: Loop, steps: tuple[float, float]) -> Figures:
     uncertain = _uncertain_inputs(loop)
     spectra, dof, factor = _type_a_spectra(loop)
     coarse = _quantised_spectra(loop, steps)
-    found = _all_variants(loop, uncertain, np.concatenate([spectra, coarse]))
+    noise = point_noise(loop.waveform.frequency, loop.setup, loop.kept, loop.waveform.harmonic_noise)
+    found = _all_variants(loop, uncertain, np.concatenate([spectra, coarse]), noise)
     pairs, tail = 2 * len(uncertain), 1 + 2 * len(uncertain)
     values, budget, degrees = {}, {}, {}
     few = float(enlargement(dof))
@@ -71,7 +74,7 @@ def figures(loop: Loop, steps: tuple[float, float]) -> Figures:
         degrees[name] = effective_dof({"scatter": (scatter, dof), "inputs": (systematic, math.inf)})
     total = {name: math.sqrt(sum(share**2 for share in parts.values())) for name, parts in budget.items()}
     windows = {name: series[tail : tail + len(spectra)] for name, series in found.items()}
-    return Figures(values, total, degrees, budget, windows)
+    return Figures(values, total, degrees, budget, windows, noise)
 
 
 def _uncertain_inputs(loop: Loop) -> Mapping[str, Measured]:
@@ -80,7 +83,9 @@ def _uncertain_inputs(loop: Loop) -> Mapping[str, Measured]:
     return {name: value for name, value in inputs.items() if value.uncertainty > 0}
 
 
-def _all_variants(loop: Loop, uncertain: Mapping[str, Measured], spectra: Complexes) -> dict[str, Floats]:
+def _all_variants(
+    loop: Loop, uncertain: Mapping[str, Measured], spectra: Complexes, noise: tuple[float, float]
+) -> dict[str, Floats]:
     """Quantities of: the loop itself; each input up, down; each spectrum of the scatter."""
     count = 1 + 2 * len(uncertain) + len(spectra)
     inputs: dict[str, float | Floats] = dict(nominal_inputs(loop.setup))
@@ -91,7 +96,6 @@ def _all_variants(loop: Loop, uncertain: Mapping[str, Measured], spectra: Comple
         inputs[name] = column
     own = np.broadcast_to(loop.recorded, (count - len(spectra), *loop.recorded.shape))
     recorded = np.concatenate([own, spectra])
-    noise = loop.waveform.harmonic_noise
     found = evaluate(recorded, loop.waveform.frequency, loop.setup, inputs, loop.single, loop.kept, noise)
     return {name: found[name] for name in QUANTITIES}
 

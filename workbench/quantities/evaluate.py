@@ -23,7 +23,7 @@ DENSE = 2048
 
 def evaluate(
     recorded: Complexes, frequency: float, setup: Setup, inputs: Inputs, single: bool,
-    kept: tuple[int, int], harmonic_noise: Floats,
+    kept: tuple[int, int], noise: tuple[float, float],
 ) -> dict[str, Floats]:  # fmt: skip
     """Every quantity of design table, each of dims (batch).
 
@@ -35,7 +35,7 @@ def evaluate(
     inputs : {name: float or array of dims (batch, 1)}
     single : bool                                      one-cycle record, see `waves`
     kept : (field, induction)                          highest harmonic of each above the noise
-    harmonic_noise : array, dims (channel)             rms noise of an amplitude, recorded units
+    noise : (field, induction)                         of one phase point of H, A/m, and of B, T
 
     Returns
     -------
@@ -49,7 +49,6 @@ def evaluate(
     omega = 2 * np.pi * frequency * np.arange(1, recorded.shape[-1] + 1)
     harmonics = undo(recorded, omega, setup, inputs)
     clear = above_noise(harmonics, kept)
-    noise = point_noise(frequency, setup, kept, harmonic_noise)
     field, induction = waves(clear, DENSE, single)
     with np.errstate(divide="ignore", invalid="ignore"):
         found = _of_crossings(field, induction)

@@ -19,7 +19,7 @@ _DISTORTION_LIMIT = 0.05
 """Of the secondary's voltage: a form factor alone is blind to a third harmonic in quadrature."""
 QUASI_STATIC_BELOW = 20.0
 """Hz.  IEC 60404-6 covers 20 Hz to 100 kHz; below, IEC 60404-4."""
-_CHANCE = 3.0
+_CHANCE = 4.0
 """Standard uncertainties that noise alone may explain."""
 _AC_RING = 1.4
 _AC_RING_REMARK = 1.25
@@ -43,10 +43,11 @@ def loop_marks(loop: Loop, figures: Figures, line: RunLine, limit: Limits) -> Se
 def _steadiness(loop: Loop, figures: Figures, limit: Limits) -> Seen:
     seen: Seen = {}
     if loop.waveform.windows is not None:
-        for name in ("field_tip", "induction_tip"):
+        for name, noise in zip(("field_tip", "induction_tip"), figures.noise, strict=True):
             tips = figures.windows[name]
+            by_chance = _CHANCE * noise / loop.waveform.windows.scale.factor
             spread = float(np.ptp(tips) / np.mean(tips))
-            if spread > limit["unsteady"]:
+            if spread > limit["unsteady"] + by_chance / np.mean(tips):
                 seen["unsteady"] = f"{QUANTITIES[name].symbol} spreads by {spread:.2%} from cycle to cycle"
     gap = closure(loop) / figures.values["induction_tip"]
     if gap > limit["open loop"]:
@@ -58,9 +59,10 @@ def closure(loop: Loop) -> float:
     """Largest step of B from the beginning to the end of a cycle, a constant offset taken off, T.
 
     A voltage that is integrated closes but for the drift of its mean from cycle to cycle; a signal
-    that already stands for B closes but for its own drift.
+    that already stands for B closes but for its own drift.  What noise alone explains is taken off.
     """
     waveform = loop.waveform
+    noise = _CHANCE * waveform.noise[1] / waveform.samples_per_cycle**0.5
     # A gain from recorded unit to T: the fundamental knows it.
     gain = abs(loop.harmonics.induction[0, 0]) / abs(loop.recorded[1, 0])
     if loop.single:
@@ -70,8 +72,8 @@ def closure(loop: Loop) -> float:
         return 0.0
     if _integrated_here(loop):
         # The fundamental's gain is per 1/omega; a constant voltage over one period weighs 2 pi of it.
-        return float(np.max(np.abs(levels - levels.mean())) * gain * 2 * math.pi)
-    return float(np.max(np.abs(np.diff(levels))) * gain)
+        return float(max(np.max(np.abs(levels - levels.mean())) - noise, 0) * gain * 2 * math.pi)
+    return float(max(np.max(np.abs(np.diff(levels))) - 2 * noise, 0) * gain)
 
 
 def _integrated_here(loop: Loop) -> bool:
