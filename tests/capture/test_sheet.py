@@ -259,3 +259,9 @@ def test_numbers_against_uncertainties_and_units_against_pint(value: object, dig
     number, factor = ufloat_fromstr(text), REGISTRY.Quantity(1.0, unit).to("m").magnitude
     assert found.value == pytest.approx(number.nominal_value * factor, rel=1e-12)
     assert found.uncertainty == pytest.approx(number.std_dev * factor, rel=1e-12)
+
+
+def test_the_sheets_text_is_kept_as_it_was_read(folder: Path) -> None:
+    path = folder / "campaign.toml"
+    path.write_bytes(path.read_bytes().replace(b"\n", b"\r\n"))
+    assert read_campaign(folder).sheet_text.encode("utf-8") == path.read_bytes()

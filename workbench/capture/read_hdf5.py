@@ -68,6 +68,7 @@ def _read(file: h5py.File, group: h5py.Group, columns: Columns, wants_time: bool
     for role in ("field", "induction"):
         name = _name(role, getattr(columns, role), names)
         if name is None:
+            _ask_for_group(group, names)
             raise gone(role, getattr(columns, role), names, "dataset")
         found[role] = _column(file, group, name)
     time = _name("time", columns.time, names) if wants_time else None
@@ -79,6 +80,16 @@ def _read(file: h5py.File, group: h5py.Group, columns: Columns, wants_time: bool
         if math.isnan(rate):
             raise no_time_base(names)
     return Raw(found["field"], found["induction"], found.get("time"), rate)
+
+
+def _ask_for_group(group: h5py.Group, names: list[str]) -> None:
+    """Refuse a file of groups where runs.csv names none of them."""
+    inner = [name for name in names if group.get(name, getclass=True, getlink=True) is h5py.HardLink]
+    inner = [name for name in inner if group.get(name, getclass=True) is h5py.Group]
+    if group.name == "/" and inner:
+        file = Path(group.file.filename).name
+        reason = f"'{file}' holds {len(inner)} groups, and runs.csv names none of them"
+        raise CaptureError(reason, f"Name the group behind the file's path, e.g. {file}#{inner[0]}.")
 
 
 def _name(role: str, wanted: str | int, names: list[str]) -> str | None:

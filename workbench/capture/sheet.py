@@ -93,7 +93,8 @@ def read_file(path: Path, wanted: str) -> tuple[str, Finding | None]:
         found = "a folder of this name" if path.is_dir() else "no file of this name"
         return "", Finding(name, wanted, found, _DRAFT)
     try:
-        text = path.read_text(encoding="utf-8-sig")
+        # Line ends stay as they are: the text is handed on as it was read.
+        text = path.read_bytes().decode("utf-8-sig")
     except UnicodeDecodeError as error:
         return "", Finding(name, wanted, f"bytes that are not UTF-8 (at byte {error.start})", "Save the file as UTF-8.")
     except OSError as error:
