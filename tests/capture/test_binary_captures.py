@@ -317,3 +317,19 @@ def test_a_pipe_is_no_file(folder: Path, one_capture: Make) -> None:
 def test_a_suffix_has_one_reader() -> None:
     with pytest.raises(ValueError, match=r"'\.csv' is read by read_text already"):
         reader(".csv")(lambda location, columns, wants_time: None)  # type: ignore[arg-type, return-value]
+
+
+@pytest.mark.parametrize("name", ["a.npz", "a.h5"])
+def test_the_sheets_sampling_rate_serves_where_there_is_no_time(
+    folder: Path, one_capture: Make, wave: Wave, name: str
+) -> None:
+    path = folder / "captures" / name
+    if name.endswith("npz"):
+        np.savez(path, **{"field [V]": wave[1], "induction [V]": wave[2]})
+    else:
+        with h5py.File(path, "w") as file:
+            group(file, wave, integers=False)
+            del file["time"]
+    # The names fit text captures only: in the other formats the usual ones stand in.
+    campaign = one_capture(f"captures/{name}", 'sample_rate = "10 kHz"\nfield = "CH1"\ninduction = "CH2"')
+    assert read_capture(campaign, campaign.runs[0]).sample_rate == pytest.approx(1e4)

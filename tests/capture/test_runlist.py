@@ -178,4 +178,4 @@ def test_a_circuit_must_be_named_where_there_are_two(folder: Path) -> None:
 
 
 def test_a_bad_capture_path_is_no_finding_of_the_list(folder: Path) -> None:
-    assert len(read(folder, f"{HEAD}\n../x.csv,R1,loop,50,23,100\n/tmp/y.csv,R1,loop,50,23,100\n")) == 2
+    assert len(read(folder, f"{HEAD}\n../x.csv,R1,loop,50,23,100\n/data/y.csv,R1,loop,50,23,100\n")) == 2

@@ -3,6 +3,7 @@
 
 from __future__ import annotations
 
+import hashlib
 from collections.abc import Callable
 from pathlib import Path
 
@@ -186,8 +187,6 @@ def test_hash_is_that_of_the_file(folder: Path, one_capture: Make, wave: Wave) -
     campaign = one_capture("captures/a.csv")
     before = read_capture(campaign, campaign.runs[0]).sha256
     assert before == capture_sha256(campaign, campaign.runs[0])
-    import hashlib
-
     assert before == hashlib.sha256((folder / "captures" / "a.csv").read_bytes()).hexdigest()
     write(folder, [HEAD, *rows_of(wave), ""])
     assert capture_sha256(campaign, campaign.runs[0]) != before
