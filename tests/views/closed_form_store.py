@@ -19,11 +19,11 @@ from workbench.quantities.mark_table import mark_bits
 HOSTILE = "<img src=x onerror=document.title='pwned'>"
 PHASE = 2 * np.pi * np.arange(512) / 512
 ALLOYS = {  # specimen: (alloy, knee A/m, saturation T, lag)
-    "R41a": ("Fe-6.5Si, melt 41", 60.0, 1.30, 0.10),
-    "R41b": ("Fe-6.5Si, melt 41", 66.0, 1.28, 0.12),
-    "R52a": ("Fe-50Ni, melt 52", 25.0, 1.50, 0.07),
-    "R60a": ("Fe-49Co-2V", 150.0, 2.20, 0.16),
-    HOSTILE: ("Fe <b>bold</b> & co $x_1$", 40.0, 1.00, 0.2),
+    "R41a": ("Fe-6.5Si, melt 41", 60.0, 1.30, 0.25),
+    "R41b": ("Fe-6.5Si, melt 41", 66.0, 1.28, 0.3),
+    "R52a": ("Fe-50Ni, melt 52", 25.0, 1.50, 0.15),
+    "R60a": ("Fe-49Co-2V", 150.0, 2.20, 0.35),
+    HOSTILE: ("Fe <b>bold</b> & co $x_1$", 40.0, 1.00, 0.4),
 }
 PEAKS = (20.0, 40.0, 80.0, 160.0, 320.0, 640.0)
 FREQUENCIES = (50.0, 400.0, 1000.0, 5000.0)

@@ -57,9 +57,9 @@ def strengths(count: int) -> npt.NDArray[np.float64]:
     Examples
     --------
     >>> strengths(3).round(2).tolist()
-    [0.3, 0.6, 0.9]
+    [0.4, 0.7, 1.0]
     """
-    return np.linspace(0.3, 0.9, count) if count > 1 else np.full(count, 0.9)
+    return np.linspace(0.4, 1.0, count) if count > 1 else np.ones(count)
 
 
 def map_colours(places: npt.ArrayLike) -> list[str]:

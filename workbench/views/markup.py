@@ -50,7 +50,7 @@ def key(entries: Sequence[tuple[str, Look, str]], holes: bool, doubts: bool) -> 
 
 def _swatch(look: Look) -> str:
     return (
-        f'<svg width="34" height="8" aria-hidden="true"><line x1="1" y1="4" x2="33" y2="4" stroke="{look.colour}" '
+        f'<svg class="wb-swatch" width="34" height="8" aria-hidden="true"><line x1="1" y1="4" x2="33" y2="4" stroke="{look.colour}" '
         f'stroke-width="2.5" stroke-dasharray="{SVG_DASHES[look.dash]}"/></svg>'
     )
 
@@ -63,12 +63,17 @@ def heading(name: str, title: str, under: str = "") -> str:
     )
 
 
+def note(text: str) -> str:
+    """A plain line under a pane's name."""
+    return f'<span title="{escape(text)}">{escape(text)}</span>'
+
+
 def ramp(colour: str, ends: Sequence[str]) -> str:
     """The strength of the hue along a family, its ends named."""
     if len(ends) < 2:
         return f"<span>{escape(''.join(ends))}</span>"
     return (
-        f'<span class="wb-ramp">{escape(ends[0])} <i style="background:linear-gradient(to right,{colour}4d,{colour}e6)">'
+        f'<span class="wb-ramp">{escape(ends[0])} <i style="background:linear-gradient(to right,{colour}66,{colour}ff)">'
         f"</i> {escape(ends[1])}</span>"
     )
 

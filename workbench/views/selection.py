@@ -11,6 +11,9 @@ import traitlets
 ALONG = ("peak", "frequency", "temperature", "specimen")
 """The axes along which there can be one loop each."""
 
+FITS = ("all runs", "chosen loop")
+"""What the axes of the loops are made to fit."""
+
 
 @dataclass(frozen=True)
 class Choice:
@@ -27,6 +30,8 @@ class Choice:
     along: str = "peak"
     quantity: str = ""
     """Of the map."""
+    fit: str = "all runs"
+    """What the axes of the loops fit."""
     show_set_aside: bool = False
 
 
@@ -51,6 +56,7 @@ class Selection(traitlets.HasTraits):
     temperature = traitlets.Float(None, allow_none=True)
     along = traitlets.Enum(ALONG, default_value="peak")
     quantity = traitlets.Unicode("")
+    fit = traitlets.Enum(FITS, default_value=FITS[0])
     show_set_aside = traitlets.Bool(False)
 
     @traitlets.validate("specimens")

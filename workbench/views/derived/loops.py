@@ -59,6 +59,10 @@ class LoopFamily:
     tip_doubtful: npt.NDArray[np.bool_]
     tip_choices: tuple[dict[str, Any], ...]
     """What to choose where a tip is clicked."""
+    tip_names: tuple[str, ...]
+    """The tips' settings in words."""
+    tip_chosen: int | None
+    """Which tip is that of the chosen loop."""
     ends: tuple[str, ...]
     """Settings of the first and the last loop, in words."""
     left_out: int
@@ -115,6 +119,8 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
     """The family of loops along the chosen axis, with the loop of the held setting on top."""
     looks = alloy_looks(index.alloy_names)
     factor, unit, largest_field, largest_induction = _frame(index, choice)
+    if choice.fit == "chosen loop":
+        largest_field, largest_induction = _tips(index, choice) or (largest_field, largest_induction)
     steps = _steps(index, choice)
     members = [(each, index.row(each.front, each.peak, each.frequency, each.temperature)) for each in steps]
     members = [(each, row) for each, row in members if row >= 0]
@@ -122,10 +128,11 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
     drawn = kept if choice.along != "specimen" else []
     shapes = [thinned(index.field[row] / factor, index.induction[row]) for _, row in drawn]
     rows = np.array([row for _, row in kept], dtype=int)
+    names = tuple(_name(each, choice.along, index) for each, _ in kept)
     front = looks[index.alloy_of(choice.front)]
     chosen = _curve(index, choice, choice.front, factor, looks)
     beside = (_curve(index, choice, name, factor, looks) for name in choice.specimens if name != choice.front)
-    held = replace(choice, quantity="", **({choice.along: None} if choice.along != "specimen" else {"front": ""}))
+    held = replace(choice, quantity="", fit="", **({choice.along: None} if choice.along != "specimen" else {"front": ""}))
     return LoopFamily(
         key=(index.token, "loops", held),
         chosen_key=(index.token, replace(choice, quantity="")),
@@ -142,7 +149,9 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
         tip_colours=tuple(looks[index.alloy_of(each.front)].colour for each, _ in kept) or (front.colour,),
         tip_doubtful=index.doubtful[rows],
         tip_choices=tuple(_click(each, choice.along) for each, _ in kept),
-        ends=_ends(kept, choice.along, index),
+        tip_names=names,
+        tip_chosen=next((place for place, (_, row) in enumerate(kept) if chosen and row == chosen.row), None),
+        ends=() if choice.along == "specimen" else tuple(dict.fromkeys((*names[:1], *names[-1:]))),
         left_out=left_out,
         chosen=chosen,
         beside=tuple(curve for curve in beside if curve is not None),
@@ -183,6 +192,12 @@ def _frame(index: RunIndex, choice: Choice) -> tuple[float, str, float, float]:
     return (1000.0, "kA/m", field, induction) if field >= 10_000 else (1.0, "A/m", field, induction)
 
 
+def _tips(index: RunIndex, choice: Choice) -> tuple[float, float] | None:
+    row = index.row(choice.front, choice.peak, choice.frequency, choice.temperature)
+    tips = [float(index.values(name)[row]) for name in ("field_tip", "induction_tip")] if row >= 0 else []
+    return (tips[0], tips[1]) if tips and all(math.isfinite(tip) and tip > 0 for tip in tips) else None
+
+
 def _curve(index: RunIndex, choice: Choice, specimen: str, factor: float, looks: dict[str, Look]) -> Curve | None:
     row = index.row(specimen, choice.peak, choice.frequency, choice.temperature)
     if row < 0:
@@ -195,12 +210,12 @@ def _click(step: Choice, along: str) -> dict[str, Any]:
     return {"front": step.front} if along == "specimen" else {along: getattr(step, along)}
 
 
-def _ends(kept: list[tuple[Choice, int]], along: str, index: RunIndex) -> tuple[str, ...]:
-    if along == "specimen" or not kept:
-        return ()
-    unit = {"peak": "T" if index.peak_name == "peak_induction" else "A/m", "frequency": "Hz", "temperature": "°C"}
-    ends = (kept[0][0], kept[-1][0]) if len(kept) > 1 else (kept[0][0],)
-    return tuple(spelled(getattr(each, along), unit[along]) for each in ends)
+def _name(step: Choice, along: str, index: RunIndex) -> str:
+    return step.front if along == "specimen" else spelled(getattr(step, along), _units(index)[along])
+
+
+def _units(index: RunIndex) -> dict[str, str]:
+    return {"peak": "T" if index.peak_name == "peak_induction" else "A/m", "frequency": "Hz", "temperature": "°C"}
 
 
 def _points(index: RunIndex, chosen: Curve | None, factor: float) -> tuple[tuple[float, float], ...]:
@@ -214,8 +229,7 @@ def _points(index: RunIndex, chosen: Curve | None, factor: float) -> tuple[tuple
 
 def _title(index: RunIndex, choice: Choice) -> str:
     held = {"peak": choice.peak, "frequency": choice.frequency, "temperature": choice.temperature}
-    unit = {"peak": "T" if index.peak_name == "peak_induction" else "A/m", "frequency": "Hz", "temperature": "°C"}
-    words = [spelled(value, unit[name]) for name, value in held.items() if name != choice.along]
+    words = [spelled(value, _units(index)[name]) for name, value in held.items() if name != choice.along]
     who = "chosen specimens" if choice.along == "specimen" else choice.front
     return f"{who} · {', '.join(words)}"
 

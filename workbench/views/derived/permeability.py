@@ -65,6 +65,7 @@ def permeability_curves(index: RunIndex, choice: Choice) -> PermeabilityCurves:
     chosen = (float(x_all[row]), float(y_all[row])) if row >= 0 else None
     if chosen is not None and not all(0 < value < math.inf for value in chosen):
         chosen = None
+    front = [curve for curve in curves if curve.specimen == choice.front]
     held = (choice.specimens, choice.front, choice.frequency, choice.temperature)
     return PermeabilityCurves(
         key=(index.token, "permeability", held),
@@ -77,10 +78,10 @@ def permeability_curves(index: RunIndex, choice: Choice) -> PermeabilityCurves:
         y_label=label("amplitude_permeability"),
         front_colour=looks[index.alloy_of(choice.front)].colour,
         curves=curves,
-        band_note="shaded: 95 % band of the specimen in front",
-        band=_band(index, [curve for curve in curves if curve.specimen == choice.front]),
+        band_note=_band_note(index, front),
+        band=_band(index, front),
         chosen=chosen,
-        summary=_summary(index, [curve for curve in curves if curve.specimen == choice.front], dropped),
+        summary=_summary(index, front, dropped),
     )
 
 
@@ -134,6 +135,18 @@ def _band(index: RunIndex, fronts: list[LadderCurve]) -> tuple[tuple[Floats, Flo
         x, y, spread = curve.x[stretch], curve.y[stretch], half[stretch]
         polygons.append((np.concatenate([x, x[::-1]]), np.concatenate([y + spread, (y - spread)[::-1]])))
     return tuple(polygons)
+
+
+def _band_note(index: RunIndex, fronts: list[LadderCurve]) -> str:
+    """How wide the band is, since on a logarithmic axis a good measurement's is hardly seen."""
+    if not fronts or not len(fronts[0].rows):
+        return ""
+    relative = 100 * NORMAL_95 * index.values("u_amplitude_permeability")[fronts[0].rows] / fronts[0].y
+    low, high = finite_range(relative)
+    if not math.isfinite(low):
+        return "no uncertainty stated"
+    span = f"±{low:.2g} %" if f"{low:.2g}" == f"{high:.2g}" else f"±{low:.2g} to ±{high:.2g} %"
+    return f"shaded: 95 % band of {fronts[0].specimen}, {span}"
 
 
 def _stretches(good: npt.NDArray[np.bool_]) -> list[npt.NDArray[np.intp]]:

@@ -9,7 +9,7 @@ import numpy as np
 
 from workbench.base.vocabulary import QUANTITIES
 from workbench.views.derived.index import Axis, RunIndex
-from workbench.views.selection import ALONG, Choice
+from workbench.views.selection import Choice
 
 START_ALLOYS = 8
 ROOM_TEMPERATURE = 23.0
@@ -58,7 +58,6 @@ def settled(index: RunIndex, choice: Choice) -> Choice:
         peak=_nearest(peaks, choice.peak),
         frequency=_nearest(frequencies, choice.frequency),
         temperature=_nearest(temperatures, choice.temperature),
-        along=choice.along if choice.along in ALONG else "peak",
         quantity=quantity,
     )
 

@@ -103,7 +103,7 @@ def named_axis(low: float, high: float, values: Sequence[float], most: int = 6) 
 
 def _short(value: float) -> str:
     """Settings are spelled out up to 1 000 and then with k, as they are on the bench."""
-    return f"{value / 1000:.3g}k" if value > 1000 else f"{value:.4g}"
+    return f"{value / 1000:.3g}k" if value >= 1000 else f"{value:.4g}"
 
 
 def written(value: float) -> str:

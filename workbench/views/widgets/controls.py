@@ -9,7 +9,7 @@ import ipywidgets
 
 from workbench.base.vocabulary import QUANTITIES, label
 from workbench.views.derived.index import Axis, RunIndex, spelled
-from workbench.views.selection import ALONG, Choice
+from workbench.views.selection import ALONG, FITS, Choice
 
 NOT_GIVEN = ""
 """Stands for None in a slider, which must have an option and cannot hold None."""
@@ -24,8 +24,10 @@ class Controls(ipywidgets.Box):
         self._filling = False
         self.specimens = ipywidgets.SelectMultiple(rows=4, layout=ipywidgets.Layout(width="auto"))
         self.front = _dropdown("in front")
-        self.along = _dropdown("one loop each")
-        self.along.options = [("peak", "peak"), *((name, name) for name in ALONG[1:])]
+        self.along = _dropdown("one loop per")
+        self.along.options = ALONG
+        self.fit = _dropdown("loop axes fit")
+        self.fit.options = FITS
         self.quantity = _dropdown("map of")
         self.quantity.options = [(_quantity_name(name), name) for name in QUANTITIES]
         self.peak, self.frequency, self.temperature = (_slider(name) for name in ("peak", "frequency", "temperature"))
@@ -33,16 +35,14 @@ class Controls(ipywidgets.Box):
         self.by_trait: dict[str, Any] = {
             name: getattr(self, name)
             for name in (
-                "specimens", "front", "along", "quantity", "peak", "frequency", "temperature", "show_set_aside",
+                "specimens", "front", "along", "fit", "peak", "frequency", "temperature", "quantity", "show_set_aside",
             )
         }  # fmt: skip
         for name, control in self.by_trait.items():
             control.observe(self._follow(name), "value")
         who = ipywidgets.VBox([ipywidgets.Label("specimens (Ctrl or Shift for several)"), self.specimens])
         who.add_class("wb-who")
-        rest = ipywidgets.Box(
-            [self.front, self.along, self.quantity, self.peak, self.frequency, self.temperature, self.show_set_aside]
-        )
+        rest = ipywidgets.Box([control for control in self.by_trait.values() if control is not self.specimens])
         rest.add_class("wb-rest")
         super().__init__([who, rest])
         self.add_class("wb-controls")
@@ -67,7 +67,8 @@ class Controls(ipywidgets.Box):
             _fill_steps(self.peak, peaks, peak_unit, choice.peak)
             _fill_steps(self.frequency, frequencies, "Hz", choice.frequency)
             _fill_steps(self.temperature, temperatures, "°C", choice.temperature)
-            self.along.value, self.quantity.value = choice.along, choice.quantity or None
+            self.along.value, self.fit.value = choice.along, choice.fit
+            self.quantity.value = choice.quantity or None
             self.show_set_aside.value = choice.show_set_aside
         finally:
             self._filling = False

@@ -18,6 +18,8 @@ class LoopsPane(Pane):
 
     name = "Loops"
 
+    of_lines = True
+
     def scales(self) -> tuple[bqplot.Scale, bqplot.Scale]:
         """Linear and symmetric."""
         return bqplot.LinearScale(min=-1.0, max=1.0), bqplot.LinearScale(min=-1.0, max=1.0)
@@ -36,18 +38,14 @@ class LoopsPane(Pane):
             "family": bqplot.Lines(x=EMPTY, y=EMPTY, stroke_width=1.2, **plain),
             **line_layers("beside", scales, stroke_width=1.6),
             "normal": bqplot.Lines(x=EMPTY, y=EMPTY, stroke_width=0.9, opacities=[0.7], **plain),
-            "chosen": bqplot.Lines(x=EMPTY, y=EMPTY, stroke_width=3.0, **plain),
+            "chosen": bqplot.Lines(x=EMPTY, y=EMPTY, stroke_width=2.6, **plain),
             "tips": tips,
             "doubts": doubts,
             "points": bqplot.Scatter(x=EMPTY, y=EMPTY, marker="square", stroke="#ffffff", default_size=42, **plain),
         }
 
     def draw_all(self, shown: LoopFamily) -> None:
-        """The family, its tips, and the axes."""
-        set_axis(self.x_axis, shown.field_axis, shown.field_label)
-        set_axis(self.y_axis, shown.induction_axis, "B / T")
-        right, top = shown.field_axis.high, shown.induction_axis.high
-        put(self.layers["zero"], [[-right, right], [0.0, 0.0]], [[0.0, 0.0], [-top, top]])
+        """The family and its tips."""
         colour = [shown.look.colour]
         put(self.layers["family"], shown.field, shown.induction, colors=colour, opacities=shown.strength.tolist())
         joined = shown.tip_field if len(shown.field) > 1 else EMPTY
@@ -59,7 +57,12 @@ class LoopsPane(Pane):
         self._doubt_choices = tuple(shown.tip_choices[place] for place in doubtful)
 
     def draw_chosen(self, shown: LoopFamily) -> None:
-        """The loop on top, those beside it, and the lines of text."""
+        """The loop on top, those beside it, the axes where they follow it, and the lines of text."""
+        if set_axis(self.x_axis, shown.field_axis, shown.field_label) | set_axis(
+            self.y_axis, shown.induction_axis, "B / T"
+        ):
+            right, top = shown.field_axis.high, shown.induction_axis.high
+            put(self.layers["zero"], [[-right, right], [0.0, 0.0]], [[0.0, 0.0], [-top, top]])
         self.head(shown.title, markup.ramp(shown.look.colour, shown.ends))
         self.caption.value = markup.caption(shown.summary)
         for dash in DASHES:

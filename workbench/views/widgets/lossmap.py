@@ -28,7 +28,7 @@ class MapPane(Pane):
         closed: dict[str, Any] = {"x": EMPTY, "y": EMPTY, "close_path": True, **plain}
         tiles = bqplot.Lines(fill="inside", stroke_width=0.5, colors=["#ffffff"], **closed)
         holes = bqplot.Lines(fill="inside", stroke_width=0.5, colors=["#ffffff"], fill_colors=[HOLE], **closed)
-        words = bqplot.Label(x=EMPTY, y=EMPTY, text=[], align="middle", colors=["#1a1a1a"], default_size=10, **plain)
+        words = bqplot.Label(x=EMPTY, y=EMPTY, text=[], align="middle", colors=["#1a1a1a"], default_size=10, font_weight="normal", **plain)
         doubts = doubt_layer(scales)
         self._tile_choices: tuple[dict[str, Any], ...] = ()
         self._hole_choices: tuple[dict[str, Any], ...] = ()

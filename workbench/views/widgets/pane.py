@@ -19,7 +19,7 @@ from workbench.views.derived.ticks import AxisPlan
 
 Chooser = Callable[[dict[str, Any]], None]
 EMPTY = np.empty(0)
-MARGIN = {"top": 8, "bottom": 46, "left": 58, "right": 14}
+MARGIN = {"top": 8, "bottom": 46, "left": 62, "right": 14}
 
 
 class Shown(Protocol):
@@ -38,6 +38,8 @@ class Pane(ipywidgets.VBox):
     """One of the three pictures.  `show` draws it once, or not at all where nothing has changed."""
 
     name = ""
+    of_lines = False
+    """Drawn in the hues of the alloys, which the dark theme brightens a little."""
 
     def __init__(self, choose: Chooser) -> None:
         self.draws = 0
@@ -62,6 +64,8 @@ class Pane(ipywidgets.VBox):
         self.caption = ipywidgets.HTML()
         super().__init__([self.heading, self.figure, self.caption])
         self.add_class("wb-pane")
+        if self.of_lines:
+            self.add_class("wb-lines")
 
     def scales(self) -> tuple[bqplot.Scale, bqplot.Scale]:
         """The two scales, with limits from the start: a log scale without them may blank the figure."""
@@ -103,7 +107,7 @@ def _axis(scale: bqplot.Scale, side: str) -> bqplot.Axis:
         scale=scale,
         side=side,
         grid_lines="none",
-        label_offset="44px" if vertical else "34px",
+        label_offset="47px" if vertical else "34px",
     )
 
 
@@ -112,14 +116,18 @@ def log_scale() -> bqplot.LogScale:
     return bqplot.LogScale(min=1.0, max=10.0)
 
 
-def set_axis(axis: bqplot.Axis, plan: AxisPlan, label: str) -> None:
-    """Give an axis and its scale their limits, ticks and label."""
+def set_axis(axis: bqplot.Axis, plan: AxisPlan, label: str) -> bool:
+    """Give an axis and its scale their limits, ticks and label; False where they had them already."""
+    texts = {_as_javascript(tick): text for tick, text in zip(plan.ticks, plan.texts, strict=True)}
+    if (axis.scale.min, axis.scale.max, axis.label, axis.tick_labels) == (plan.low, plan.high, label, texts):
+        return False
     with axis.scale.hold_sync():
         axis.scale.min, axis.scale.max = float(plan.low), float(plan.high)
     with axis.hold_sync():
         axis.label = label
         axis.tick_values = np.array(plan.ticks, float)
-        axis.tick_labels = {_as_javascript(tick): text for tick, text in zip(plan.ticks, plan.texts, strict=True)}
+        axis.tick_labels = texts
+    return True
 
 
 def _as_javascript(value: float) -> str:

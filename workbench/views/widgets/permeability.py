@@ -28,6 +28,8 @@ class PermeabilityPane(Pane):
 
     name = "Permeability"
 
+    of_lines = True
+
     def scales(self) -> tuple[bqplot.Scale, bqplot.Scale]:
         """Logarithmic both."""
         return log_scale(), log_scale()
@@ -56,7 +58,7 @@ class PermeabilityPane(Pane):
 
     def draw_all(self, shown: PermeabilityCurves) -> None:
         """Curves, dots, band and axes."""
-        self.head(shown.title, "<span>" + shown.band_note + "</span>")
+        self.head(shown.title, markup.note(shown.band_note))
         set_axis(self.x_axis, shown.x_axis, shown.x_label)
         set_axis(self.y_axis, shown.y_axis, shown.y_label)
         colour = [shown.front_colour]

@@ -15,14 +15,14 @@ STYLE = """<style>
 .wb-entry { display: inline-flex; align-items: center; gap: 6px; }
 .wb-entry > i { display: inline-block; width: 14px; height: 11px; }
 .wb-controls { display: flex; flex-flow: row wrap; gap: 0 14px; overflow: visible; }
-.wb-controls .wb-who { flex: 1 1 210px; min-width: 190px; overflow: visible; }
+.wb-controls .wb-who { flex: 1 1 190px; min-width: 180px; overflow: visible; }
 .wb-controls .wb-who > .widget-label { height: 20px; line-height: 20px; font-size: 11px; opacity: 0.8; }
 .wb-controls .wb-who select { height: 76px; }
-.wb-controls .wb-rest { flex: 3 1 520px; display: grid; grid-template-columns: repeat(auto-fit, minmax(232px, 1fr));
+.wb-controls .wb-rest { flex: 4 1 520px; display: grid; grid-template-columns: repeat(auto-fit, minmax(214px, 1fr));
   gap: 2px 14px; align-content: start; overflow: visible; }
 .wb-controls .wb-rest > * { width: auto; min-width: 0; }
-.wb-controls .wb-rest .widget-label { width: 84px; flex: 0 0 84px; text-align: left; }
-.wb-controls .widget-readout { min-width: 68px; text-align: right; }
+.wb-controls .wb-rest .widget-label { width: 82px; flex: 0 0 82px; text-align: left; }
+.wb-controls .widget-readout { min-width: 62px; text-align: right; }
 .wb-panes { display: flex; flex-flow: row wrap; gap: 0 8px; overflow: visible; }
 .wb-panes > .wb-pane { flex: 1 1 0%; min-width: 240px; overflow: hidden; margin: 0; }
 .wb-pane-head { height: 42px; overflow: hidden; font-size: 12px; padding: 0 2px; }
@@ -38,11 +38,17 @@ STYLE = """<style>
 .wb-strip-ticks > span { position: absolute; transform: translateX(-50%); font-size: 10.5px; line-height: 12px; opacity: 1; }
 .wb-caption { font-size: 11.5px; line-height: 15px; min-height: 30px; padding: 0 4px; overflow: hidden;
   display: -webkit-box; -webkit-line-clamp: 2; -webkit-box-orient: vertical; }
-.wb-page .bqplot text { font-size: 11px; }
-.wb-page .bqplot .axislabel { font-size: 12px; fill: var(--jp-content-font-color1); }
+.wb-page .bqplot svg text { font-size: 11px; font-family: var(--jp-ui-font-family) !important; }
+.wb-page .bqplot svg text.axislabel { font-size: 12px; fill: var(--jp-content-font-color1); }
 .wb-page .bqplot .axis path.domain, .wb-page .bqplot .axis line { stroke: var(--jp-content-font-color2); }
+body[data-jp-theme-light="false"] .wb-lines .bqplot svg :is(.line, .element),
+body[data-jp-theme-light="false"] :is(.wb-swatch, .wb-ramp > i) { filter: brightness(1.35); }
 .wb-page .bqplot .element, .wb-page .bqplot path.line { cursor: pointer; }
-.wb-status { font-size: 12.5px; min-height: 18px; padding: 1px 2px; }
+.wb-line { display: flex; flex-flow: row wrap; align-items: center; gap: 0 12px; overflow: visible; }
+.wb-line > .wb-stepper { flex: 0 1 230px; }
+.wb-line > .wb-stepper > .widget-label { width: auto; }
+.wb-line > .widget-html { flex: 1 1 300px; margin: 0; }
+.wb-status { font-size: 12.5px; min-height: 18px; padding: 1px 2px;}
 .wb-trouble { border-left: 4px solid #d55e00; padding-left: 8px; }
 .wb-log pre { max-height: 200px; overflow: auto; font-size: 11px; }
 .wb-scroll { overflow-x: auto; margin-top: 4px; }

@@ -23,6 +23,7 @@ from workbench.views.widgets.lifetime import close_tree, take_over_cell
 from workbench.views.widgets.loops import LoopsPane
 from workbench.views.widgets.lossmap import MapPane
 from workbench.views.widgets.permeability import PermeabilityPane
+from workbench.views.widgets.stepper import Stepper
 from workbench.views.widgets.style import STYLE
 
 STATE_FORMAT = 1
@@ -48,13 +49,15 @@ class Workbench(ipywidgets.VBox):
         self._shown: tuple[Choice, int] | None = None
         self._rendering = False
         self.selection = selection or Selection(**asdict(start(run_index(store))))
-        self.panes = (LoopsPane(self._choose), PermeabilityPane(self._choose), MapPane(self._choose))
+        self.panes = tuple(kind(self._choose_by_click) for kind in (LoopsPane, PermeabilityPane, MapPane))
         self.controls = Controls(self._choose)
         self.header, self.alloy_key, self.status, self.failure, self.readout = (ipywidgets.HTML() for _ in range(5))
-        row = ipywidgets.Box(self.panes)
+        self.stepper = Stepper(self._choose)
+        row, line = ipywidgets.Box(self.panes), ipywidgets.Box([self.stepper, self.status])
         row.add_class("wb-panes")
+        line.add_class("wb-line")
         sheet = ipywidgets.HTML(STYLE, layout=ipywidgets.Layout(display="none"))
-        super().__init__([sheet, self.header, self.controls, self.alloy_key, row, self.status, self.readout, self.failure])
+        super().__init__([sheet, self.header, self.controls, self.alloy_key, row, line, self.readout, self.failure])
         self.add_class("wb-page")
         self.render()
         self.selection.observe(self._changed)
@@ -62,6 +65,10 @@ class Workbench(ipywidgets.VBox):
 
     def _choose(self, values: dict[str, Any]) -> None:
         self.selection.choose(**values)
+
+    def _choose_by_click(self, values: dict[str, Any]) -> None:
+        self._choose(values)
+        self.stepper.focus()
 
     def _changed(self, _: Any) -> None:
         # Values changed together arrive one by one, but after all are set: the first call draws
@@ -95,6 +102,7 @@ class Workbench(ipywidgets.VBox):
                 pane.show(shown)
             _say(self.alloy_key, markup.key(made.key, bool(made.map.hole_texts), bool(glance.doubtful)))
             _say(self.readout, markup.readout_table(made.readout))
+            self.stepper.show(made.loops)
             self.page = made
         _say(self.status, markup.status(status_sentence(index, choice)))
         self.controls.show(index, choice)
