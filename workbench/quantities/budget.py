@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 import numpy.typing as npt
@@ -19,7 +20,7 @@ from workbench.quantities.evaluate import evaluate, point_noise
 Floats = npt.NDArray[np.float64]
 Complexes = npt.NDArray[np.complex128]
 
-DRAWS = 32
+DRAWS = 96
 """Noise draws where the scatter between cycles cannot be seen."""
 
 
@@ -111,10 +112,22 @@ def _type_a_spectra(loop: Loop) -> tuple[Complexes, float, float]:
 
 def _draws(loop: Loop, rms: Floats, count: int) -> Complexes:
     """Seeded noise on every harmonic; `rms` of a complex amplitude, by channel."""
-    shape = (count, *loop.recorded.shape)
-    generator = np.random.default_rng(count)
-    noise = (generator.standard_normal(shape) + 1j * generator.standard_normal(shape)) / math.sqrt(2)
-    return np.asarray(noise * rms[:, None])
+    parts = _normal_draws(count, 4 * loop.recorded.shape[-1]).reshape(count, -1, 2, 2)
+    noise = (parts[..., 0] + 1j * parts[..., 1]) / math.sqrt(2)
+    return np.asarray(np.swapaxes(noise, 1, 2) * rms[:, None])
+
+
+@lru_cache(maxsize=8)
+def _normal_draws(count: int, width: int) -> Floats:
+    """Seeded normal draws, (count, width); the first columns, those of low harmonics, exactly uncorrelated.
+
+    The same draws serve every run: what chance correlates in them would bias every uncertainty alike.
+    """
+    drawn = np.random.default_rng(count).standard_normal((count, width))
+    exact = min(count // 2, width)
+    basis, _ = np.linalg.qr(np.concatenate([np.ones((count, 1)), drawn[:, :exact]], axis=1))
+    drawn[:, :exact] = basis[:, 1:] * math.sqrt(count - 1)
+    return np.asarray(drawn)
 
 
 def _gap_draws(loop: Loop, count: int) -> Complexes:
@@ -132,4 +145,4 @@ def _quantised_spectra(loop: Loop, steps: tuple[float, float]) -> Complexes:
         return np.empty((0, *loop.recorded.shape), complex)
     # Without noise every cycle meets the same codes: only the samples of one cycle average out.
     rms = np.where(hidden, step / math.sqrt(12 * loop.waveform.samples_per_cycle), 0.0)
-    return loop.recorded + _draws(loop, rms, DRAWS // 2)
+    return loop.recorded + _draws(loop, rms, DRAWS // 4)

@@ -43,19 +43,18 @@ def evaluate(
 
     Notes
     -----
-    Shapes and waveform figures are read off the harmonics above the noise, since noise always
-    raises a largest value and a distortion; areas and powers need no such choice.
+    Only harmonics above the noise are used: noise always raises a largest value, an rms and a
+    distortion, and through the secondary's own current it has a power of its own.
     """
     omega = 2 * np.pi * frequency * np.arange(1, recorded.shape[-1] + 1)
-    harmonics = undo(recorded, omega, setup, inputs)
-    clear = above_noise(harmonics, kept)
+    clear = above_noise(undo(recorded, omega, setup, inputs), kept)
     field, induction = waves(clear, DENSE, single)
     with np.errstate(divide="ignore", invalid="ignore"):
         found = _of_crossings(field, induction)
         found |= _of_extremes(field, induction, *noise)
         found["remanence_ratio"] = found["remanence"] / found["induction_tip"]
-        found |= _of_fundamentals(harmonics.field, harmonics.induction)
-        found |= _of_loss(harmonics, frequency, setup, inputs)
+        found |= _of_fundamentals(clear.field, clear.induction)
+        found |= _of_loss(clear, frequency, setup, inputs)
     slope = clear.induction * omega
     found["form_factor"] = power.form_factor(on_phase(1j * slope, DENSE))
     found["induction_distortion"] = power.distortion(slope)
@@ -65,13 +64,16 @@ def evaluate(
 
 
 def above_noise(harmonics: Harmonics, kept: tuple[int, int]) -> Harmonics:
-    """The same loop without the harmonics of H and B that are lost in the noise of their channel."""
+    """The same loop without the harmonics of each channel that are lost in its noise."""
     order = np.arange(1, harmonics.field.shape[-1] + 1)
-    field, induction = (
-        np.where(order <= highest, wave, 0)
-        for highest, wave in zip(kept, (harmonics.field, harmonics.induction), strict=True)
+    of_field, of_induction = (order <= highest for highest in kept)
+    return replace(
+        harmonics,
+        field=np.where(of_field, harmonics.field, 0),
+        current=np.where(of_field, harmonics.current, 0),
+        induction=np.where(of_induction, harmonics.induction, 0),
+        voltage=np.where(of_induction, harmonics.voltage, 0),
     )
-    return replace(harmonics, field=field, induction=induction)
 
 
 def _of_crossings(field: Floats, induction: Floats) -> dict[str, Floats]:
