@@ -60,6 +60,8 @@ def with_uncertainty(value: float, uncertainty: float, unit: str = "", coverage:
     '8410 ± 120'
     >>> with_uncertainty(1.5, float("nan"), "T")
     '1.5 T'
+    >>> with_uncertainty(1.5, 1e-12, "T")
+    '1.5000000000000 ± 0.0000000000020 T'
     """
     tail = f" {unit}" if unit else ""
     if not math.isfinite(value):
@@ -71,8 +73,9 @@ def with_uncertainty(value: float, uncertainty: float, unit: str = "", coverage:
     expanded = round(expanded, digits)
     # 0.0996 rounds up to 0.10: count the digits again, or three would be shown.
     digits = 1 - math.floor(math.log10(expanded))
-    if -digits > 5 or digits > 8 or (value and abs(value) >= 1e6):
-        exponent = math.floor(math.log10(max(abs(value), expanded)))
+    exponent = math.floor(math.log10(max(abs(value), expanded)))
+    # A value between 1 and 10 has no power of ten to take out, however small its uncertainty.
+    if exponent and (-digits > 5 or digits > 8 or abs(value) >= 1e6):
         scaled = with_uncertainty(value / 10**exponent, uncertainty / 10**exponent, "", coverage)
         return f"({scaled})e{exponent:+03d}{tail}"
     places = max(digits, 0)
