@@ -15,7 +15,7 @@ import numpy as np
 from simulated import CIRCUITS, RING, SOFT
 
 import workbench
-from workbench.bench.forward import Timing, simulate
+from workbench.bench.forward import Digitiser, Timing, simulate
 from workbench.bench.materials import alloy_loop, tip_at_field
 from workbench.store.open import Store
 from workbench.views.widgets.workbench import Workbench
@@ -23,6 +23,7 @@ from workbench.views.widgets.workbench import Workbench
 PEAKS = np.geomspace(10.0, 1000.0, 48).round(1)
 FREQUENCIES = (50.0, 100.0, 200.0, 400.0)
 ROUNDS = 10
+QUIET = Digitiser(noise=1e-6), Digitiser(noise=1e-5)
 SHEET = """
 sheet = 1
 title = "Forty-eight loops"
@@ -50,7 +51,7 @@ def made_store(folder: Path) -> Store:
     for number, (frequency, peak) in enumerate((f, p) for f in FREQUENCIES for p in PEAKS):
         loop = alloy_loop(SOFT, tip_at_field(SOFT, peak, frequency), frequency)
         timing = Timing(200 * frequency, 1274)
-        field, induction = simulate(*loop, RING, CIRCUITS["winding"], frequency, timing)
+        field, induction = simulate(*loop, RING, CIRCUITS["winding"], frequency, timing, *QUIET, seed=number)
         name = f"captures/{number:04d}.npz"
         channels = {"time [s]": timing.times, "field [V]": field.values, "induction [V]": induction.values}
         np.savez(folder / name, **channels)
