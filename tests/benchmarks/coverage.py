@@ -75,7 +75,8 @@ def circuit(case: Case) -> Circuit:
     if case.sensor == "winding":
         return Circuit("main", field, Channel("winding", {}))
     resistance, capacitance = (20e3, 10e-6) if case.frequency < 1e3 else (1e3, 0.2e-6)
-    parts = {"resistance": Measured(resistance, 1e-3 * resistance), "capacitance": Measured(capacitance, 1e-3 * capacitance)}
+    values = {"resistance": resistance, "capacitance": capacitance}
+    parts = {name: Measured(value, 1e-3 * value) for name, value in values.items()}
     return Circuit("main", field, Channel("passive integrator", parts))
 
 

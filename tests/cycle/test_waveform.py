@@ -118,3 +118,19 @@ def test_spread_of_windows_scales_to_that_of_the_mean(cycles: int) -> None:
 def test_a_record_that_cannot_serve_says_so(samples: int, cycles: float, word: str) -> None:
     with pytest.raises(CaptureError, match=word):
         mean_cycle(record(samples, cycles), 50 * samples / cycles, 50)
+
+
+def test_the_frequency_is_as_uncertain_as_it_says() -> None:
+    """Against the spread of many seeded records, which also stays above the theoretical bound.
+
+    Rife and Boorstyn 1974, from memory: var(omega) >= 24 (sigma/A)^2/N^3 for a sinusoid in white noise.
+    """
+    generator = np.random.default_rng(5)
+    base = record(4_000, 12.37)
+    found = [
+        mean_cycle(base + 0.05 * generator.standard_normal(base.shape), 50 * 4_000 / 12.37, 50) for _ in range(200)
+    ]
+    spread = np.std([each.frequency for each in found])
+    assert spread == pytest.approx(np.mean([each.frequency_noise for each in found]), rel=0.35)
+    bound = np.sqrt(24 / 4_000) * 0.05 / 4.0 / (2 * np.pi) * 50 / 12.37
+    assert spread > bound

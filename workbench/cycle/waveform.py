@@ -41,6 +41,8 @@ class Waveform:
 
     frequency: float
     """Hz"""
+    frequency_noise: float
+    """Hz, standard uncertainty from the noise; the recorder's clock is taken as exact."""
     cycles: float
     """Cycles in the record, whole or not."""
     samples_per_cycle: float
@@ -134,7 +136,9 @@ def mean_cycle(samples: Floats, sample_rate: float, expected: float) -> Waveform
     kept = _kept_harmonics(folded, harmonic_noise)
     cycles = whole_cycles(total)
     return Waveform(
-        frequency=per_sample * sample_rate, cycles=total, samples_per_cycle=per_cycle,
+        frequency=per_sample * sample_rate,
+        frequency_noise=_frequency_noise(folded, harmonic_noise, samples.shape[1] / sample_rate),
+        cycles=total, samples_per_cycle=per_cycle,
         harmonics=folded / response, noise=noise * np.sqrt(factor), harmonic_noise=harmonic_noise,
         levels=_cycle_means(rest, position, cycles), end_gap=end_gap,
         gap_noise=gap_noise * noise * np.sqrt(factor), kept=kept,
@@ -226,6 +230,20 @@ def _sample_noise(rest: Floats, highest: int) -> Floats:
     # Differences do not see offset and drift; the periodic part took one value a harmonic away.
     share = 1 - min(0.9, 2 * highest / rest.shape[1])
     return np.asarray(np.std(np.diff(rest, axis=1), axis=1) / np.sqrt(2 * share))
+
+
+def _frequency_noise(folded: Complexes, harmonic_noise: Floats, duration: float) -> float:
+    """Standard uncertainty of the frequency, Hz, for a record of `duration` s.
+
+    Two windows of half the record, half the record apart, each with sqrt(2) of the record's noise:
+    the advance of a phase has the variance 2 (noise/amplitude)^2, and both channels weigh as
+    `fine_frequency` weighs them.  It is a little above the bound for a sinusoid in white noise.
+    """
+    power = np.abs(folded) ** 2
+    weight = power[:, 0] / power.sum(axis=1)
+    phase = np.sqrt(2) * harmonic_noise / np.sqrt(power[:, 0])
+    advance = float(np.sqrt(np.sum((weight * phase) ** 2)) / np.sum(weight))
+    return advance / (np.pi * duration)
 
 
 def _kept_harmonics(folded: Complexes, harmonic_noise: Floats) -> npt.NDArray[np.intp]:

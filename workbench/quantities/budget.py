@@ -73,6 +73,7 @@ def figures(loop: Loop, steps: tuple[float, float]) -> Figures:
         budget[name] = parts
         systematic = math.sqrt(sum(share**2 for source, share in parts.items() if source != "scatter"))
         degrees[name] = effective_dof({"scatter": (scatter, dof), "inputs": (systematic, math.inf)})
+    budget["measured_frequency"] = {"scatter": loop.waveform.frequency_noise}
     total = {name: math.sqrt(sum(share**2 for share in parts.values())) for name, parts in budget.items()}
     windows = {name: series[tail : tail + len(spectra)] for name, series in found.items()}
     return Figures(values, total, degrees, budget, windows, noise)
