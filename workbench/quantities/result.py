@@ -13,16 +13,21 @@ Floats = npt.NDArray[np.float64]
 PHASE_POINTS = 512
 """Points of a stored loop; phase = 2 pi arange(512)/512, 0 at the upward zero of B's fundamental."""
 
-SOURCES = (
+CIRCUIT_SOURCES = (
     "field_resistance", "field_inductance", "field_sensitivity", "field_scale", "field_delay",
     "induction_resistance", "induction_capacitance", "induction_load", "induction_coil_resistance",
     "induction_time_constant", "induction_droop", "induction_scale", "induction_delay",
-    "outer_diameter", "inner_diameter", "height", "path_length", "area", "mass", "density", "coil_area",
-    "scatter", "quantisation", "method",
 )  # fmt: skip
-"""Inputs of a budget, in order.  The first thirteen are the circuit's, then the specimen's; the
-last three belong to the run alone: `scatter` (type A), `quantisation` (where the scatter does not
+"""Inputs that all runs of a circuit share."""
+SPECIMEN_SOURCES = (
+    "outer_diameter", "inner_diameter", "height", "path_length", "area", "mass", "density", "coil_area",
+)  # fmt: skip
+"""Inputs that all runs of a specimen share."""
+RUN_SOURCES = ("scatter", "quantisation", "method")
+"""Parts that belong to one run alone: `scatter` (type A), `quantisation` (where the scatter does not
 show it), `method` (what the evaluation itself leaves open, a trace's assumed sine for instance)."""
+SOURCES = CIRCUIT_SOURCES + SPECIMEN_SOURCES + RUN_SOURCES
+"""Inputs of a budget, in order."""
 
 
 @dataclass(frozen=True)
