@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import time
 from collections.abc import Mapping, Sequence
 from typing import Any
 
@@ -14,6 +15,9 @@ from workbench.store.schema import NUMBERS
 from workbench.store.segments import SEGMENT_RUNS, pack, write_segment
 from workbench.store.writer import Writer
 
+LONGEST_SECONDS = 30.0
+"""How much work may be lost when the power goes: a segment is committed at least this often."""
+
 
 class Committer:
     """Collects outcomes and commits them; what is not committed is not in the store."""
@@ -24,6 +28,7 @@ class Committer:
         self._fingerprints = fingerprints
         self._reduced: list[Reduced] = []
         self._failed: list[Failed] = []
+        self._last_commit = time.monotonic()
         self._known_failures = {capture: (reason, remedy) for capture, reason, remedy in writer.live_failures()}
 
     def take(self, outcomes: Sequence[Outcome]) -> None:
@@ -35,6 +40,8 @@ class Committer:
                 self._failed.append(outcome)
         while len(self._reduced) >= SEGMENT_RUNS:
             self._commit(self._reduced[:SEGMENT_RUNS])
+        if time.monotonic() - self._last_commit > LONGEST_SECONDS:
+            self.finish()
 
     def finish(self) -> None:
         """Commit what is left."""
@@ -51,6 +58,7 @@ class Committer:
         # Only now: an interruption above leaves them to be committed once more.
         self._reduced = self._reduced[len(rows) :]
         self._failed = self._failed[len(failed) :]
+        self._last_commit = time.monotonic()
 
 
 def _keys(rows: Sequence[Reduced]) -> dict[str, Any]:

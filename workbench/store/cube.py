@@ -62,8 +62,9 @@ def reached_cube(arrays: Arrays, placed: Placement, specimens: Specimens, by: st
     wanted = np.asarray(at, float)
     specimen, peak, frequency, temperature = placed.shape
     # Ladders run along the peaks: that axis goes last, the other three become one.
-    ladders = np.moveaxis(figures, 3, -1).reshape(len(PARTS), len(NAMES), -1, peak)
-    steps = np.moveaxis(budget, 1, 3).reshape(-1, peak, len(NAMES), len(SOURCES))
+    count = specimen * frequency * temperature
+    ladders = np.moveaxis(figures, 3, -1).reshape(len(PARTS), len(NAMES), count, peak)
+    steps = np.moveaxis(budget, 1, 3).reshape(count, peak, len(NAMES), len(SOURCES))
     read = read_ladders(ladders, steps, NAMES.index(by), wanted)
     shape = (specimen, frequency, temperature, len(wanted))
     found = np.moveaxis(read.figures.reshape(len(PARTS), len(NAMES), *shape), -1, 3)
