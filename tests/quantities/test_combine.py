@@ -18,7 +18,7 @@ def runs() -> tuple[list[Figure], list[uncertainties.UFloat]]:
     for place, (run, specimen, circuit) in enumerate(OWNERS):
         shares = GENERATOR.normal(0, 0.02, len(SOURCES))
         value = 10.0 + place
-        total = uncertainties.ufloat(value, 0)
+        total: uncertainties.UFloat | float = value
         for source, share in zip(SOURCES, shares, strict=True):
             owner = run if source in ("scatter", "quantisation", "method") else specimen
             owner = circuit if source.startswith(("field_", "induction_")) else owner
