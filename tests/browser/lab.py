@@ -77,13 +77,17 @@ def open_and_run(page: Page, address: str) -> None:
     page.wait_for_selector(".jp-Notebook .jp-Cell", timeout=60_000)
     page.wait_for_selector(".jp-Notebook-ExecutionIndicator[data-status='idle']", timeout=60_000)
     prompt = page.locator(".jp-Notebook .jp-CodeCell .jp-InputPrompt").first
-    for _ in range(20):
-        # A run asked for while the kernel is still starting is dropped without a word.
-        page.click(".lm-MenuBar-itemLabel:text-is('Run')")
-        page.click(".lm-Menu-itemLabel:text-is('Run All Cells')")
-        page.wait_for_timeout(1000)
-        if prompt.inner_text().strip() not in ("", "[ ]:"):
+    for _ in range(30):
+        # A run asked for while the kernel is still starting is dropped without a word, or met by a question.
+        if page.locator("dialog").count():
+            page.keyboard.press("Enter")
+        elif prompt.inner_text().strip() in ("", "[ ]:"):
+            page.evaluate("document.activeElement.blur()")
+            page.click(".lm-MenuBar-itemLabel:text-is('Run')")
+            page.click(".lm-Menu-itemLabel:text-is('Run All Cells')")
+        else:
             break
+        page.wait_for_timeout(1000)
     page.wait_for_selector(".wb-pane .bqplot path.line[d]", state="attached", timeout=60_000)
 
 

@@ -44,12 +44,12 @@ def main() -> None:
     wanted.folder.mkdir(parents=True, exist_ok=True)
     for dark in (False, True):
         with tempfile.TemporaryDirectory() as name, running_lab(Path(name), dark) as lab, sync_playwright() as play:
-            write_notebook(Path(name) / "look.ipynb", first_cell(wanted.store))
             browser = play.chromium.launch(executable_path=chromium(), args=list(FLAGS))
             for width_name, width in WIDTHS.items():
+                write_notebook(Path(name) / f"{width_name}.ipynb", first_cell(wanted.store))
                 page = browser.new_page(viewport={"width": width, "height": 900 if width < 1600 else 1000})
-                page.on("console", lambda message: print(message.type, message.text) if message.type == "error" else None)
-                open_and_run(page, lab.page_of("look.ipynb"))
+                page.on("console", lambda said: print(said.text) if said.type == "error" else None)
+                open_and_run(page, lab.page_of(f"{width_name}.ipynb"))
                 if width_name == "narrow":
                     page.keyboard.press("Control+b")  # without the file browser 780 px are left
                 page.wait_for_timeout(1500)

@@ -45,7 +45,7 @@ class FakeStore:
     )
 
     def pointers(self, include_set_aside: bool = False) -> SimpleNamespace:
-        runs = self.runs.where(self.runs.kind == "loop", drop=True) if False else self.runs
+        runs = self.runs
         good = np.array(runs.kind.values == "loop")
         if not include_set_aside:
             good &= np.array(runs.standing.values == "kept")
@@ -100,10 +100,8 @@ def closed_form_store(specimens: tuple[str, ...] = tuple(ALLOYS), hostile: bool 
 
 def _dataset(keys: list, lines: list) -> xr.Dataset:
     count = len(keys)
-    coords = {
-        name: ("run", list(values))
-        for name, values in zip(("specimen", "peak_field", "frequency", "temperature"), zip(*keys, strict=True), strict=True)
-    }
+    names = ("specimen", "peak_field", "frequency", "temperature")
+    coords = {name: ("run", list(values)) for name, values in zip(names, zip(*keys, strict=True), strict=True)}
     texts = {
         name: np.full(count, text, dtype=object)
         for name, text in (

@@ -20,16 +20,16 @@ from workbench.views.colours import HOLE
 from workbench.views.derived.index import StoreLike, run_index
 from workbench.views.derived.loops import LoopFamily
 from workbench.views.derived.lossmap import LossMap
+from workbench.views.derived.overview import Overview
 from workbench.views.derived.page import Page, page
 from workbench.views.derived.permeability import PermeabilityCurves
-from workbench.views.derived.readout import Overview
 from workbench.views.derived.settle import settled, start
 from workbench.views.derived.ticks import AxisPlan
 from workbench.views.selection import Choice, Selection
 
 _DASHES = {"solid": "-", "dashed": (0, (5, 3)), "dash_dotted": (0, (5, 2, 1, 2)), "dotted": (0, (1, 2.5))}
 _SIGN: dict[str, Any] = {"marker": "^", "color": "white", "edgecolor": "black", "linewidth": 0.9, "s": 34, "zorder": 6}
-_SETTINGS = {
+_SETTINGS: Any = {
     "svg.fonttype": "none",  # text stays text: small, and found by a search
     "svg.hashsalt": "workbench",  # the same picture gives the same bytes
     "font.family": ["DejaVu Sans"],

@@ -8,9 +8,13 @@ from html import escape
 
 from workbench.views.colours import HOLE, SVG_DASHES, Look, map_colours
 from workbench.views.derived.lossmap import LossMap
-from workbench.views.derived.readout import MOST_LISTED, Column, Overview, Readout
+from workbench.views.derived.overview import Overview
+from workbench.views.derived.readout import Column, Readout
+from workbench.views.derived.ticks import SUPERSCRIPTS
 
 _POWER = re.compile(r"\((.*)\)e\+?0?(-?\d+)")
+
+MOST_LISTED = 200
 
 DOUBT_SIGN = (
     '<svg width="12" height="11" aria-hidden="true"><path d="M6 1 L11 10 L1 10 Z" '
@@ -50,7 +54,8 @@ def key(entries: Sequence[tuple[str, Look, str]], holes: bool, doubts: bool) -> 
 
 def _swatch(look: Look) -> str:
     return (
-        f'<svg class="wb-swatch" width="34" height="8" aria-hidden="true"><line x1="1" y1="4" x2="33" y2="4" stroke="{look.colour}" '
+        f'<svg class="wb-swatch" width="34" height="8" aria-hidden="true"><line x1="1" y1="4" x2="33" y2="4" '
+        f'stroke="{look.colour}" '
         f'stroke-width="2.5" stroke-dasharray="{SVG_DASHES[look.dash]}"/></svg>'
     )
 
@@ -73,8 +78,8 @@ def ramp(colour: str, ends: Sequence[str]) -> str:
     if len(ends) < 2:
         return f"<span>{escape(''.join(ends))}</span>"
     return (
-        f'<span class="wb-ramp">{escape(ends[0])} <i style="background:linear-gradient(to right,{colour}66,{colour}ff)">'
-        f"</i> {escape(ends[1])}</span>"
+        f'<span class="wb-ramp">{escape(ends[0])} '
+        f'<i style="background:linear-gradient(to right,{colour}66,{colour}ff)"></i> {escape(ends[1])}</span>'
     )
 
 
@@ -104,11 +109,8 @@ def status(text: str, trouble: bool = False) -> str:
 
 def log(traceback: str) -> str:
     """The traceback of the last failure, folded."""
-    return (
-        f'<details class="wb-log"><summary>details of the last failure</summary><pre>{escape(traceback)}</pre></details>'
-        if traceback
-        else ""
-    )
+    summary = "<summary>details of the last failure</summary>"
+    return f'<details class="wb-log">{summary}<pre>{escape(traceback)}</pre></details>' if traceback else ""
 
 
 def readout_table(table: Readout) -> str:
@@ -127,8 +129,9 @@ def readout_table(table: Readout) -> str:
         if any(cells)
     )
     more = f" ({table.left_out} more specimens are chosen)" if table.left_out else ""
+    caption_ = f"<caption>{escape(table.title)}: value ± U (k = 2){more}</caption>"
     return (
-        f'<div class="wb-scroll"><table class="wb-table"><caption>{escape(table.title)}: value ± U (k = 2){more}</caption>'
+        f'<div class="wb-scroll"><table class="wb-table">{caption_}'
         f"<thead><tr><th></th>{heads}</tr></thead><tbody>{body}{foot}</tbody></table></div>"
     )
 

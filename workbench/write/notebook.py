@@ -11,8 +11,8 @@ import nbformat
 from workbench.base.errors import StoreError
 from workbench.store.open import Store
 from workbench.views.derived.index import run_index
+from workbench.views.derived.overview import overview
 from workbench.views.derived.page import page
-from workbench.views.derived.readout import overview
 from workbench.views.derived.settle import start
 from workbench.views.figures import fallback
 

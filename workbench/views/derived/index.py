@@ -14,7 +14,7 @@ import numpy.typing as npt
 import xarray as xr
 
 from workbench.base.vocabulary import SETTINGS, shown_unit
-from workbench.quantities.mark_table import MARKS, mark_bits
+from workbench.quantities.mark_table import MARKS, mark_bits, marks_of
 
 Floats = npt.NDArray[np.float64]
 Rows = npt.NDArray[np.int32]
@@ -37,8 +37,13 @@ class PointersLike(Protocol):
 class StoreLike(Protocol):
     """The part of a store that the views read."""
 
-    title: str
-    revision: int
+    @property
+    def title(self) -> str:
+        """The campaign's title."""
+
+    @property
+    def revision(self) -> int:
+        """Grows with each committed change."""
 
     @property
     def runs(self) -> xr.Dataset:
@@ -104,6 +109,10 @@ class RunIndex:
             known = self._texts[name] = np.asarray(found)
         return str(known[row])
 
+    def marks(self, row: int) -> tuple[str, ...]:
+        """Names of the marks of a run."""
+        return marks_of(int(self.text_at("marks", row) or 0))
+
     @cached_property
     def _texts(self) -> dict[str, npt.NDArray[Any]]:
         return {}
@@ -116,6 +125,12 @@ class RunIndex:
     def specimen_place(self, name: str) -> int | None:
         """Place of a specimen on the first axis."""
         return self._places[0].get(name)
+
+    def rows_of(self, specimens: Sequence[str]) -> Rows:
+        """All rows to show of some specimens, (run,)."""
+        places = [self._places[0][name] for name in specimens if name in self._places[0]]
+        rows = self.rows[places]
+        return np.asarray(rows[rows >= 0])
 
     def alloy_of(self, specimen: str) -> str:
         """Alloy of a specimen, its own name where none is given."""

@@ -11,6 +11,7 @@ import numpy as np
 import numpy.typing as npt
 
 from workbench.base.uncertainty import with_uncertainty
+from workbench.base.vocabulary import QUANTITIES
 from workbench.views.colours import Look, alloy_looks, strengths
 from workbench.views.derived.index import RunIndex, spelled
 from workbench.views.derived.ticks import AxisPlan, finite_range, symmetric_axis
@@ -132,9 +133,9 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
     front = looks[index.alloy_of(choice.front)]
     chosen = _curve(index, choice, choice.front, factor, looks)
     beside = (_curve(index, choice, name, factor, looks) for name in choice.specimens if name != choice.front)
-    held = replace(choice, quantity="", fit="", **({choice.along: None} if choice.along != "specimen" else {"front": ""}))
+    free: dict[str, Any] = {"front": ""} if choice.along == "specimen" else {choice.along: None}
     return LoopFamily(
-        key=(index.token, "loops", held),
+        key=(index.token, "loops", replace(choice, quantity="", fit="", **free)),
         chosen_key=(index.token, replace(choice, quantity="")),
         title=_title(index, choice),
         field_axis=symmetric_axis(largest_field / factor),
@@ -164,7 +165,8 @@ def _steps(index: RunIndex, choice: Choice) -> list[Choice]:
     if choice.along == "specimen":
         return [replace(choice, front=name) for name in choice.specimens]
     axes = {"peak": index.peaks, "frequency": index.frequencies, "temperature": index.temperatures}
-    return [replace(choice, **{choice.along: value}) for value in axes[choice.along]]
+    steps: list[dict[str, Any]] = [{choice.along: value} for value in axes[choice.along]]
+    return [replace(choice, **step) for step in steps]
 
 
 def _at_most(members: list[tuple[Choice, int]], choice: Choice) -> tuple[list[tuple[Choice, int]], int]:
@@ -184,9 +186,7 @@ def _frame(index: RunIndex, choice: Choice) -> tuple[float, str, float, float]:
 
     Over all frequencies and temperatures, so that stepping never moves the axes.
     """
-    places = [index.specimen_place(name) for name in choice.specimens]
-    rows = index.rows[places].ravel() if places else np.array([], dtype=int)
-    rows = rows[rows >= 0]
+    rows = index.rows_of(choice.specimens)
     _, field = finite_range(index.values("field_tip")[rows])
     _, induction = finite_range(index.values("induction_tip")[rows])
     return (1000.0, "kA/m", field, induction) if field >= 10_000 else (1.0, "A/m", field, induction)
@@ -242,8 +242,9 @@ def _summary(index: RunIndex, choice: Choice, chosen: Curve | None, count: int, 
         why = index.why_not(choice.front, choice.peak, choice.frequency, choice.temperature)
         setting = index.setting(choice.peak, choice.frequency, choice.temperature)
         return f"{loops}; {choice.front} at {setting}: {why}"
-    said = [
-        f"{symbol} {with_uncertainty(float(index.values(name)[chosen.row]), float(index.values('u_' + name)[chosen.row]), unit)}"
-        for symbol, name, unit in (("Br", "remanence", "T"), ("HcB", "coercivity", "A/m"))
-    ]
+    said = []
+    for name in ("remanence", "coercivity"):
+        value, spread = (float(index.values(each)[chosen.row]) for each in (name, "u_" + name))
+        word = QUANTITIES[name]
+        said.append(f"{word.symbol} {with_uncertainty(value, spread, word.unit)}")
     return f"{loops}; chosen: {'; '.join(said)}"

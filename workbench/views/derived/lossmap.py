@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Hashable
 from dataclasses import dataclass
+from itertools import chain, pairwise
 from typing import Any
 
 import numpy as np
@@ -88,7 +89,7 @@ def loss_map(index: RunIndex, choice: Choice) -> LossMap:
     log_y = bool(high / low > EVEN_RATIO) if low > 0 else False
     edges = _frequency_edges([column[0].frequency for column in columns])
     boxes = [_boxes(column, edges[number], log_y) for number, column in enumerate(columns)]
-    flat = [(place, box) for column, spans in zip(columns, boxes, strict=True) for place, box in zip(column, spans, strict=True)]
+    flat = list(zip(every, chain.from_iterable(boxes), strict=True))
     good = [(place, box) for place, box in flat if not place.hole]
     bad = [(place, box) for place, box in flat if place.hole]
     values = index.values(choice.quantity)[[place.row for place, _ in good]]
@@ -154,20 +155,20 @@ def _columns(index: RunIndex, choice: Choice) -> list[list[_Place]]:
 
 def _guessed(frequency: float, frequencies: list[float], rows: list[int], reached: Floats) -> float:
     """Where to draw a hole: at the induction that the same peak reaches at the nearest frequencies."""
-    pairs = [(math.log(each), reached[row]) for each, row in zip(frequencies, rows, strict=True) if row >= 0 and reached[row] > 0]
-    if not pairs:
+    there = np.array(rows)
+    at = np.flatnonzero((there >= 0) & (reached[there] > 0))
+    if not len(at):
         return math.nan
-    x, y = zip(*pairs, strict=True)
-    return float(np.interp(math.log(frequency), x, y))
+    return float(np.interp(math.log(frequency), np.log(frequencies)[at], reached[there[at]]))
 
 
 def _frequency_edges(frequencies: list[float]) -> list[tuple[float, float]]:
-    cuts = [math.sqrt(low * high) for low, high in zip(frequencies, frequencies[1:], strict=False)]
+    cuts = [math.sqrt(low * high) for low, high in pairwise(frequencies)]
     if not cuts:
         return [(frequency / 1.5, frequency * 1.5) for frequency in frequencies]
     first, last = frequencies[0] ** 2 / cuts[0], frequencies[-1] ** 2 / cuts[-1]
     ends = [first, *cuts, last]
-    return list(zip(ends, ends[1:], strict=False))
+    return list(pairwise(ends))
 
 
 def _boxes(column: list[_Place], edge: tuple[float, float], log_y: bool) -> list[tuple[float, float, float, float]]:
@@ -181,7 +182,7 @@ def _boxes(column: list[_Place], edge: tuple[float, float], log_y: bool) -> list
         reach = math.log(1.15) if log_y else 0.1 * scaled[0]
         ends = np.array([scaled[0] - reach, scaled[0] + reach])
     ends = np.exp(ends) if log_y else np.maximum(ends, 0.0)
-    return [(edge[0], edge[1], float(low), float(high)) for low, high in zip(ends[:-1], ends[1:], strict=True)]
+    return [(edge[0], edge[1], float(low), float(high)) for low, high in pairwise(ends)]
 
 
 def _corners(box: tuple[float, float, float, float]) -> tuple[Floats, Floats]:
@@ -219,9 +220,7 @@ def _induction_axis(boxes: list[tuple[float, float, float, float]], log_y: bool)
 
 def _strip(index: RunIndex, choice: Choice) -> AxisPlan:
     """Limits of the colours: over all temperatures of the specimen, so that a colour keeps its meaning."""
-    place = index.specimen_place(choice.front)
-    rows = index.rows[place].ravel() if place is not None else np.array([], dtype=int)
-    values = index.values(choice.quantity)[rows[rows >= 0]]
+    values = index.values(choice.quantity)[index.rows_of([choice.front])]
     low, high = finite_range(values)
     if low > 0 and high / low > 5:
         return log_axis(low, high, most=5)

@@ -117,9 +117,7 @@ def _missing(index: RunIndex, choice: Choice, specimen: str, x_all: Floats, y_al
 
 def _axis(index: RunIndex, choice: Choice, values: Floats) -> AxisPlan:
     """Over all frequencies and temperatures of the chosen specimens, so that stepping moves no axis."""
-    places = [index.specimen_place(name) for name in choice.specimens]
-    rows = index.rows[places].ravel() if places else np.array([], dtype=int)
-    low, high = finite_range(values[rows[rows >= 0]], positive=True)
+    low, high = finite_range(values[index.rows_of(choice.specimens)], positive=True)
     return log_axis(low / 1.15, high * 1.15)
 
 

@@ -1,4 +1,4 @@
-"""The figures of the chosen setting, one column a specimen, and the store at a glance."""
+"""The figures of the chosen setting, one column a specimen, and one sentence about it."""
 
 from __future__ import annotations
 
@@ -12,13 +12,12 @@ import xarray as xr
 
 from workbench.base.uncertainty import with_uncertainty
 from workbench.base.vocabulary import QUANTITIES, shown_unit
-from workbench.quantities.mark_table import MARKS, marks_of
-from workbench.views.derived.index import RunIndex, StoreLike
+from workbench.quantities.mark_table import MARKS
+from workbench.views.derived.index import RunIndex
 from workbench.views.derived.loops import LoopFamily
 from workbench.views.selection import Choice
 
 MOST_COLUMNS = 6
-MOST_LISTED = 200
 
 
 @dataclass(frozen=True)
@@ -51,18 +50,6 @@ class Readout:
     left_out: int
 
 
-@dataclass(frozen=True)
-class Overview:
-    """The store at a glance, for the header."""
-
-    title: str
-    line: str
-    doubtful: tuple[str, ...]
-    set_aside: tuple[str, ...]
-    failed: tuple[str, ...]
-    cautions: tuple[str, ...]
-
-
 def readout(index: RunIndex, choice: Choice) -> Readout:
     """The figures of every chosen specimen at the held setting, the one in front first."""
     names = [choice.front, *(name for name in choice.specimens if name != choice.front)] if choice.front else []
@@ -83,7 +70,7 @@ def _column(index: RunIndex, choice: Choice, specimen: str) -> Column:
     if row < 0:
         blank = ("",) * len(QUANTITIES)
         return Column(specimen, alloy, front, blank, (), (), index.why_not(specimen, *held), "", "", "")
-    marks = [mark for mark in marks_of(int(index.text_at("marks", row) or 0))]
+    marks = index.marks(row)
     seen = _seen(index.text_at("seen", row))
     return Column(
         specimen=specimen,
@@ -122,44 +109,6 @@ def _standing(index: RunIndex, row: int) -> str:
     return f"{standing}: {reason}" if reason else standing
 
 
-def overview(store: StoreLike, index: RunIndex) -> Overview:
-    """Counts of what is doubtful, set aside, failed or missing, with the lists behind them."""
-    runs, failures = index.runs, store.failures
-    aside = np.asarray(runs["standing"].values) == "set aside"
-    failed = [f"{row.capture}: {row.reason}. {row.remedy}" for row in failures.itertuples()]
-    loops = index.rows >= 0
-    missing = int((index.hidden[loops.any(axis=(1, 2, 3))] < 0).sum()) if loops.any() else 0
-    doubtful = np.flatnonzero(index.doubtful & ~aside)
-    count = runs.sizes["run"]
-    line = f"{count} run{'s' if count != 1 else ''} of {len(index.specimens)} specimens"
-    if missing:
-        line += f" · {missing} settings without a run"
-    return Overview(
-        title=index.title,
-        line=line,
-        doubtful=_listed(runs, doubtful, index),
-        set_aside=_listed(runs, np.flatnonzero(aside), index),
-        failed=tuple(failed),
-        cautions=_cautions(runs),
-    )
-
-
-def _listed(runs: xr.Dataset, rows: Any, index: RunIndex) -> tuple[str, ...]:
-    lines = []
-    for row in rows:
-        why = [mark for mark in marks_of(int(index.text_at("marks", row) or 0)) if MARKS[mark].weight == "doubt"]
-        reason = index.text_at("reason", row)
-        lines.append(f"{index.text_at('specimen', row)} · {index.text_at('capture', row)}: {reason or ', '.join(why)}")
-    return tuple(lines)
-
-
-def _cautions(runs: xr.Dataset) -> tuple[str, ...]:
-    if "cautions" not in runs.coords:
-        return ()
-    lines = (line.strip() for text in set(runs["cautions"].values) for line in str(text).splitlines())
-    return tuple(sorted({line for line in lines if line}))
-
-
 def status_sentence(index: RunIndex, choice: Choice) -> str:
     """One plain sentence about what is in view, or why there is nothing.
 
@@ -182,10 +131,9 @@ def status_sentence(index: RunIndex, choice: Choice) -> str:
         return f"{choice.front} at {setting}: none of its figures is computable."
     if int((index.rows >= 0).sum()) == 1:
         return f"{choice.front} at {setting}: the only run in this store."
-    place = index.specimen_place(choice.front)
-    rows = index.rows[place] if place is not None else index.rows
-    if not np.isfinite(index.values(choice.quantity)[rows[rows >= 0]]).any():
-        return f"{choice.front}: {QUANTITIES[choice.quantity].symbol} is computable at no setting; choose another quantity."
+    if not np.isfinite(index.values(choice.quantity)[index.rows_of([choice.front])]).any():
+        symbol = QUANTITIES[choice.quantity].symbol
+        return f"{choice.front}: {symbol} is computable at no setting; choose another quantity for the map."
     doubt = " This run is doubtful, see its marks." if index.doubtful[row] else ""
     return f"{choice.front} at {setting}.{doubt}"
 

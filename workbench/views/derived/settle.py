@@ -99,8 +99,6 @@ def _loss_quantity(index: RunIndex, chosen: tuple[str, ...]) -> str:
     """W/kg where every chosen specimen has it, else W/m3: the two are never mixed."""
     per_mass = index.values("specific_loss")
     for name in chosen:
-        rows = index.rows[index.specimen_place(name)]
-        rows = rows[rows >= 0]
-        if not np.isfinite(per_mass[rows]).any():
+        if not np.isfinite(per_mass[index.rows_of([name])]).any():
             return "loss_per_volume"
     return "specific_loss"

@@ -59,8 +59,8 @@ class Controls(ipywidgets.Box):
         self._filling = True
         try:
             named = [(f"{name} · {index.alloy_of(name)}", name) for name in index.specimens]
-            _fill(self.specimens, named, choice.specimens)
-            _fill(self.front, [pair for pair in named if pair[1] in choice.specimens], choice.front or None)
+            fill(self.specimens, named, choice.specimens)
+            fill(self.front, [pair for pair in named if pair[1] in choice.specimens], choice.front or None)
             peaks, frequencies, temperatures = index.ladder(choice.front)
             peak_unit = "T" if index.peak_name == "peak_induction" else "A/m"
             self.peak.description = "B̂ set" if index.peak_name == "peak_induction" else "Ĥ set"
@@ -74,7 +74,7 @@ class Controls(ipywidgets.Box):
             self._filling = False
 
 
-def _fill(control: Any, options: Sequence[tuple[str, Any]], value: Any) -> None:
+def fill(control: Any, options: Sequence[tuple[str, Any]], value: Any) -> None:
     """Set options and value in one message, and only where they differ."""
     with control.hold_sync():
         if tuple(control.options) != tuple(options):
@@ -85,7 +85,7 @@ def _fill(control: Any, options: Sequence[tuple[str, Any]], value: Any) -> None:
 
 def _fill_steps(control: Any, axis: Axis, unit: str, value: float | None) -> None:
     steps = tuple((spelled(each, unit), NOT_GIVEN if each is None else each) for each in axis)
-    _fill(control, steps or NOTHING, NOT_GIVEN if value is None or not steps else value)
+    fill(control, steps or NOTHING, NOT_GIVEN if value is None or not steps else value)
 
 
 def _quantity_name(name: str) -> str:

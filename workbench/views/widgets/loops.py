@@ -67,15 +67,17 @@ class LoopsPane(Pane):
         self.caption.value = markup.caption(shown.summary)
         for dash in DASHES:
             _put_curves(self.layers[f"beside {dash}"], [curve for curve in shown.beside if curve.look.dash == dash])
-        top = shown.chosen
-        if top is None:
+        chosen = shown.chosen
+        if chosen is None:
             put(self.layers["chosen"], EMPTY, EMPTY)
         else:
-            put(self.layers["chosen"], top.field, top.induction, colors=[top.look.colour], line_style=top.look.dash)
+            look = {"colors": [chosen.look.colour], "line_style": chosen.look.dash}
+            put(self.layers["chosen"], chosen.field, chosen.induction, **look)
         points = np.array(shown.points).reshape(-1, 2)
         put(self.layers["points"], points[:, 0], points[:, 1], colors=[shown.look.colour])
 
 
 def _put_curves(layer: Any, curves: list[Curve]) -> None:
     field = np.array([curve.field for curve in curves])
-    put(layer, field, np.array([curve.induction for curve in curves]), colors=[each.look.colour for each in curves] or ["#888888"])
+    induction = np.array([curve.induction for curve in curves])
+    put(layer, field, induction, colors=[curve.look.colour for curve in curves] or ["#888888"])

@@ -28,7 +28,9 @@ class MapPane(Pane):
         closed: dict[str, Any] = {"x": EMPTY, "y": EMPTY, "close_path": True, **plain}
         tiles = bqplot.Lines(fill="inside", stroke_width=0.5, colors=["#ffffff"], **closed)
         holes = bqplot.Lines(fill="inside", stroke_width=0.5, colors=["#ffffff"], fill_colors=[HOLE], **closed)
-        words = bqplot.Label(x=EMPTY, y=EMPTY, text=[], align="middle", colors=["#1a1a1a"], default_size=10, font_weight="normal", **plain)
+        words = bqplot.Label(
+            x=EMPTY, y=EMPTY, align="middle", colors=["#1a1a1a"], default_size=10, font_weight="normal", **plain
+        )
         doubts = doubt_layer(scales)
         self._tile_choices: tuple[dict[str, Any], ...] = ()
         self._hole_choices: tuple[dict[str, Any], ...] = ()
@@ -51,7 +53,8 @@ class MapPane(Pane):
         self.head(shown.title, markup.strip(shown))
         set_axis(self.x_axis, shown.x_axis, shown.x_label)
         set_axis(self.y_axis, shown.y_axis.unit(), shown.y_label)
-        put(self.layers["tiles"], shown.tiles.x, shown.y_axis.place(shown.tiles.y), fill_colors=list(shown.colours) or [HOLE])
+        colours = list(shown.colours) or [HOLE]
+        put(self.layers["tiles"], shown.tiles.x, shown.y_axis.place(shown.tiles.y), fill_colors=colours)
         self._tile_choices = shown.tiles.choices
         greys = [HOLE] * max(1, len(shown.hole_texts))
         put(self.layers["holes"], shown.holes.x, shown.y_axis.place(shown.holes.y), fill_colors=greys)

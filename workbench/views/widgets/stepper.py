@@ -7,6 +7,7 @@ from typing import Any
 import ipywidgets
 
 from workbench.views.derived.loops import LoopFamily
+from workbench.views.widgets.controls import fill
 from workbench.views.widgets.pane import Chooser
 
 
@@ -34,10 +35,6 @@ class Stepper(ipywidgets.Dropdown):
         try:
             self._choices = family.tip_choices
             options = tuple((name, place) for place, name in enumerate(family.tip_names))
-            with self.hold_sync():
-                if self.options != options:
-                    self.options = options
-                if self.value != family.tip_chosen:
-                    self.value = family.tip_chosen
+            fill(self, options, family.tip_chosen)
         finally:
             self._filling = False

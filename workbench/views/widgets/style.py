@@ -35,7 +35,8 @@ STYLE = """<style>
 .wb-strip-bar { position: relative; flex: 1; margin: 1px 6px 0; }
 .wb-strip-bar > i { display: block; height: 8px; }
 .wb-strip-ticks { position: relative; height: 13px; }
-.wb-strip-ticks > span { position: absolute; transform: translateX(-50%); font-size: 10.5px; line-height: 12px; opacity: 1; }
+.wb-strip-ticks > span { position: absolute; transform: translateX(-50%);
+  font-size: 10.5px; line-height: 12px; opacity: 1; }
 .wb-caption { font-size: 11.5px; line-height: 15px; min-height: 30px; padding: 0 4px; overflow: hidden;
   display: -webkit-box; -webkit-line-clamp: 2; -webkit-box-orient: vertical; }
 .wb-page .bqplot svg text { font-size: 11px; font-family: var(--jp-ui-font-family) !important; }

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import traceback
-from collections.abc import Mapping
+from collections.abc import Hashable, Mapping
 from dataclasses import asdict
 from typing import Any
 
@@ -13,8 +13,9 @@ import xarray as xr
 from workbench.bench.cautions import CAUTIONS
 from workbench.views import markup
 from workbench.views.derived.index import StoreLike, run_index
+from workbench.views.derived.overview import Overview, overview
 from workbench.views.derived.page import Page, page
-from workbench.views.derived.readout import Overview, overview, slice_in_view, status_sentence
+from workbench.views.derived.readout import slice_in_view, status_sentence
 from workbench.views.derived.settle import settled, start
 from workbench.views.figures import fallback
 from workbench.views.selection import Choice, Selection
@@ -22,6 +23,7 @@ from workbench.views.widgets.controls import Controls
 from workbench.views.widgets.lifetime import close_tree, take_over_cell
 from workbench.views.widgets.loops import LoopsPane
 from workbench.views.widgets.lossmap import MapPane
+from workbench.views.widgets.pane import Shown
 from workbench.views.widgets.permeability import PermeabilityPane
 from workbench.views.widgets.stepper import Stepper
 from workbench.views.widgets.style import STYLE
@@ -48,6 +50,7 @@ class Workbench(ipywidgets.VBox):
         self.page: Page | None = None
         self._shown: tuple[Choice, int] | None = None
         self._rendering = False
+        self._glance: tuple[Hashable, Overview] | None = None
         self.selection = selection or Selection(**asdict(start(run_index(store))))
         self.panes = tuple(kind(self._choose_by_click) for kind in (LoopsPane, PermeabilityPane, MapPane))
         self.controls = Controls(self._choose)
@@ -94,13 +97,15 @@ class Workbench(ipywidgets.VBox):
         index = run_index(self.store, wanted.show_set_aside)
         choice = settled(index, wanted)
         self.selection.choose(**asdict(choice))
-        glance = overview(self.store, index)
-        _say(self.header, markup.header(glance, CAUTIONS))
+        if self._glance is None or self._glance[0] != index.token:
+            self._glance = (index.token, overview(self.store, index))
+            self.header.value = markup.header(self._glance[1], CAUTIONS)
         if choice.specimens:
             made = page(index, choice)
-            for pane, shown in zip(self.panes, (made.loops, made.permeability, made.map), strict=True):
-                pane.show(shown)
-            _say(self.alloy_key, markup.key(made.key, bool(made.map.hole_texts), bool(glance.doubtful)))
+            shown: tuple[Shown, ...] = (made.loops, made.permeability, made.map)
+            for pane, each in zip(self.panes, shown, strict=True):
+                pane.show(each)
+            _say(self.alloy_key, markup.key(made.key, bool(made.map.hole_texts), bool(self._glance[1].doubtful)))
             _say(self.readout, markup.readout_table(made.readout))
             self.stepper.show(made.loops)
             self.page = made
@@ -147,12 +152,9 @@ class Workbench(ipywidgets.VBox):
         if bundle is None:
             bundle = {}
         bundle["text/plain"] = repr(self)
-        if self.page is not None:
-            bundle["text/html"] = fallback(self.page, self._overview())
+        if self.page is not None and self._glance is not None:
+            bundle["text/html"] = fallback(self.page, self._glance[1])
         return dict(bundle)
-
-    def _overview(self) -> Overview:
-        return overview(self.store, run_index(self.store, self.selection.show_set_aside))
 
 
 def _say(line: ipywidgets.HTML, text: str) -> None:
