@@ -60,6 +60,10 @@ class Waveform:
     """(channel,) standard uncertainty of `end_gap`."""
     kept: npt.NDArray[np.intp]
     """(channel,) harmonics above this one are lost in the noise."""
+    single: bool
+    """One cycle only: its tips are centred, since a time mean depends on how long it dwelt there."""
+    traced: bool
+    """A figure without time base: the induction's channel was taken as a sine."""
     windows: Windows | None
     """How to look at the scatter between cycles; None where there are too few."""
 
@@ -141,7 +145,7 @@ def mean_cycle(samples: Floats, sample_rate: float, expected: float) -> Waveform
         cycles=total, samples_per_cycle=per_cycle,
         harmonics=folded / response, noise=noise * np.sqrt(factor), harmonic_noise=harmonic_noise,
         levels=_cycle_means(rest, position, cycles), end_gap=end_gap,
-        gap_noise=gap_noise * noise * np.sqrt(factor), kept=kept,
+        gap_noise=gap_noise * noise * np.sqrt(factor), kept=kept, single=single is not None, traced=False,
         windows=_windows(averaged, position, cycles, response),
     )  # fmt: skip
 

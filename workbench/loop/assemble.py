@@ -12,6 +12,7 @@ from workbench.bench.circuit import Circuit
 from workbench.bench.specimen import Specimen
 from workbench.capture.record import Record
 from workbench.cycle.spread import on_phase
+from workbench.cycle.trace import closed_figure
 from workbench.cycle.waveform import Waveform, mean_cycle
 from workbench.loop.undo import Harmonics, Setup, nominal_inputs, scaled_unit, undo
 
@@ -31,8 +32,11 @@ class Loop:
     """(K,) the factors that turned the record's phase to this one."""
     harmonics: Harmonics
     """dims (1, K)"""
-    single: bool
-    """One-cycle record: the tips are centred, since a time mean depends on how long it dwelt there."""
+
+    @property
+    def single(self) -> bool:
+        """Whether there is one cycle only."""
+        return self.waveform.single
 
     @property
     def kept(self) -> tuple[int, int]:
@@ -53,7 +57,7 @@ def assemble(record: Record, specimen: Specimen, circuit: Circuit, frequency: fl
     ----------
     record : Record
     specimen, circuit : what it was measured on and with
-    frequency : float, Hz     the setting; the record's own is found
+    frequency : float, Hz     the setting; the record's own is found, unless it has no time base
 
     Raises
     ------
@@ -61,7 +65,11 @@ def assemble(record: Record, specimen: Specimen, circuit: Circuit, frequency: fl
     """
     setup = setup_of(record, specimen, circuit)
     samples = np.stack([record.field, record.induction])
-    waveform = mean_cycle(samples, record.sample_rate, frequency)
+    if np.isnan(record.sample_rate):
+        _insist_on_an_induction(setup)
+        waveform = closed_figure(samples, frequency)
+    else:
+        waveform = mean_cycle(samples, record.sample_rate, frequency)
     _insist_on_a_fundamental(waveform, samples)
     omega = 2 * np.pi * waveform.frequency * np.arange(1, waveform.harmonics.shape[1] + 1)
     first = undo(waveform.harmonics[None], omega, setup, nominal_inputs(setup))
@@ -71,8 +79,15 @@ def assemble(record: Record, specimen: Specimen, circuit: Circuit, frequency: fl
     turned = Harmonics(
         first.field * turn, first.induction * turn, first.current * turn, first.voltage * turn, first.swapped
     )
-    single = bool(np.any(waveform.end_gap != 0))
-    return Loop(waveform, setup, waveform.harmonics * turn, turn, turned, single)
+    return Loop(waveform, setup, waveform.harmonics * turn, turn, turned)
+
+
+def _insist_on_an_induction(setup: Setup) -> None:
+    if setup.induction_unit == "V" and setup.circuit.induction.sensor == "winding":
+        raise CaptureError(
+            "a trace without time base shows the secondary's voltage, wanted a figure that stands for the induction",
+            "Use an integrator, or record the voltage against time.",
+        )
 
 
 def _insist_on_a_fundamental(waveform: Waveform, samples: Floats) -> None:

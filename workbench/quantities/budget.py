@@ -6,6 +6,7 @@ import math
 from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import lru_cache
+from typing import cast
 
 import numpy as np
 import numpy.typing as npt
@@ -13,6 +14,7 @@ import numpy.typing as npt
 from workbench.base.measured import Measured
 from workbench.base.uncertainty import effective_dof, enlargement
 from workbench.base.vocabulary import QUANTITIES
+from workbench.bench.circuit import InductionKind, induction_response
 from workbench.loop.assemble import Loop
 from workbench.loop.undo import nominal_inputs
 from workbench.quantities.evaluate import evaluate, point_noise
@@ -20,6 +22,10 @@ from workbench.quantities.evaluate import evaluate, point_noise
 Floats = npt.NDArray[np.float64]
 Complexes = npt.NDArray[np.complex128]
 
+_SINE_SHARE = 0.1 / math.sqrt(3)
+"""A trace's induction may be distorted by 10 %, evenly distributed; our assumption, no source."""
+_NOT_IN_A_TRACE = ("form_factor", "induction_distortion")
+"""Its induction was taken as a sine: the waveform's own figures would only say so."""
 DRAWS = 96
 """Noise draws where the scatter between cycles cannot be seen."""
 
@@ -56,8 +62,9 @@ def figures(loop: Loop, steps: tuple[float, float]) -> Figures:
     uncertain = _uncertain_inputs(loop)
     spectra, dof, factor = _type_a_spectra(loop)
     coarse = _quantised_spectra(loop, steps)
+    assumed = _without_the_assumption(loop)
     noise = point_noise(loop.waveform.frequency, loop.setup, loop.kept, loop.waveform.harmonic_noise)
-    found = _all_variants(loop, uncertain, np.concatenate([spectra, coarse]), noise)
+    found = _all_variants(loop, uncertain, np.concatenate([spectra, coarse, assumed]), noise)
     pairs, tail = 2 * len(uncertain), 1 + 2 * len(uncertain)
     values, budget, degrees = {}, {}, {}
     few = float(enlargement(dof))
@@ -69,7 +76,9 @@ def figures(loop: Loop, steps: tuple[float, float]) -> Figures:
         enlarged = scatter * few
         parts = {**shares, "scatter": enlarged}
         if len(coarse):
-            parts["quantisation"] = float(np.std(series[tail + len(spectra) :], ddof=1))
+            parts["quantisation"] = float(np.std(series[tail + len(spectra) :][: len(coarse)], ddof=1))
+        if len(assumed):
+            parts["method"] = _SINE_SHARE * float(series[-1] - series[0])
         budget[name] = parts
         systematic = math.sqrt(sum(share**2 for source, share in parts.items() if source != "scatter"))
         degrees[name] = effective_dof({"scatter": (scatter, dof), "inputs": (systematic, math.inf)})
@@ -99,6 +108,8 @@ def _all_variants(
     own = np.broadcast_to(loop.recorded, (count - len(spectra), *loop.recorded.shape))
     recorded = np.concatenate([own, spectra])
     found = evaluate(recorded, loop.waveform.frequency, loop.setup, inputs, loop.single, loop.kept, noise)
+    if loop.waveform.traced:
+        found |= {name: np.full(count, np.nan) for name in _NOT_IN_A_TRACE}
     return {name: found[name] for name in QUANTITIES}
 
 
@@ -136,6 +147,22 @@ def _gap_draws(loop: Loop, count: int) -> Complexes:
     order = np.arange(1, loop.recorded.shape[-1] + 1)
     size = np.random.default_rng(count + 1).standard_normal((count, 2, 1)) * loop.waveform.gap_noise[:, None]
     return np.asarray(size * 1j / (2 * np.pi * order) * loop.turn)
+
+
+def _without_the_assumption(loop: Loop) -> Complexes:
+    """For a trace: the spectrum as if the integrator needed no undoing; else none.
+
+    A trace has no time base, and its integrator is undone as if the induction were sinusoidal.  How
+    much that can be wrong is a share of how much the undoing changes.
+    """
+    if not loop.waveform.traced or loop.setup.induction_unit != "V":
+        return np.empty((0, *loop.recorded.shape), complex)
+    kind = cast(InductionKind, loop.setup.circuit.induction.sensor)
+    scalars = {name: value.value for name, value in loop.setup.circuit.induction.scalars.items()}
+    lead = np.angle(1j * induction_response(kind, scalars, loop.omega[:1]))
+    ideal = loop.recorded.copy()
+    ideal[1] *= np.exp(1j * lead)
+    return ideal[None]
 
 
 def _quantised_spectra(loop: Loop, steps: tuple[float, float]) -> Complexes:

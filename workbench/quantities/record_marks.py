@@ -93,6 +93,8 @@ def record_marks(record: Record, waveform: Waveform, limit: dict[str, float]) ->
         codes = np.ptp(values) / step if step > 0 else np.inf
         if codes < limit["coarse"]:
             seen["coarse"] = f"{name}: {codes:.0f} codes over the swing"
+    if np.isnan(record.sample_rate):
+        return seen
     if waveform.samples_per_cycle < limit["few samples"]:
         seen["few samples"] = f"{waveform.samples_per_cycle:.0f} samples a cycle"
     if waveform.cycles < limit["few cycles"] - 1e-3:

@@ -47,7 +47,7 @@ def reduce_record(
     ------
     CaptureError    the capture gives no loop; the text says why and what to do
     """
-    if line.kind != "loop":
+    if line.kind not in ("loop", "trace"):
         raise CaptureError(
             f"runs of kind '{line.kind}' are read but not reduced by this version",
             "Leave the line in the run list: it is reduced when a version that can do it comes.",
