@@ -88,10 +88,8 @@ def undo(recorded: Complexes, omega: npt.NDArray[np.float64], setup: Setup, inpu
     """
     path, section = geometry(inputs)
     n1, n2 = setup.specimen.primary_turns, setup.specimen.secondary_turns
-    shift_field = np.exp(1j * omega * inputs["field_delay"])
-    shift_induction = np.exp(1j * omega * inputs["induction_delay"])
-    current, field = _primary(recorded[..., 0, :] * inputs["field_scale"] * shift_field, omega, setup, inputs, path)
-    signal = recorded[..., 1, :] * inputs["induction_scale"] * shift_induction
+    on_field, signal = _shifted(recorded, omega, inputs)
+    current, field = _primary(on_field, omega, setup, inputs, path)
     voltage, secondary = _secondary(signal, omega, setup, inputs, n2 * section)
     swapped = _against(current, voltage)
     if swapped:
@@ -107,6 +105,32 @@ def undo(recorded: Complexes, omega: npt.NDArray[np.float64], setup: Setup, inpu
             induction = induction - MU0 * field * (inputs["coil_area"] - section) / section
     field, induction, current, voltage = np.broadcast_arrays(field, induction, current, voltage)
     return Harmonics(field, induction, current, voltage, swapped)
+
+
+def primary_and_secondary(
+    recorded: Complexes, omega: npt.NDArray[np.float64], setup: Setup, inputs: Inputs
+) -> tuple[Complexes, Complexes]:
+    """Primary current and the secondary's electromotive force, as they are, polarity not looked at.
+
+    Parameters
+    ----------
+    as for `undo`; the setup's units are V or A, and V or Wb
+
+    Returns
+    -------
+    arrays, dims (batch, K), A and V
+    """
+    on_field, signal = _shifted(recorded, omega, inputs)
+    current, _ = _primary(on_field, omega, setup, inputs, 1.0)
+    voltage, _ = _secondary(signal, omega, setup, inputs, 1.0)
+    return current, voltage
+
+
+def _shifted(recorded: Complexes, omega: npt.NDArray[np.float64], inputs: Inputs) -> tuple[Complexes, Complexes]:
+    """Both channels scaled, and their delays taken out."""
+    field = recorded[..., 0, :] * inputs["field_scale"] * np.exp(1j * omega * inputs["field_delay"])
+    induction = recorded[..., 1, :] * inputs["induction_scale"] * np.exp(1j * omega * inputs["induction_delay"])
+    return field, induction
 
 
 def _primary(

@@ -5,7 +5,6 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass
-from functools import lru_cache
 from typing import cast
 
 import numpy as np
@@ -18,6 +17,7 @@ from workbench.bench.circuit import InductionKind, induction_response
 from workbench.loop.assemble import Loop
 from workbench.loop.undo import nominal_inputs
 from workbench.quantities.evaluate import evaluate, point_noise
+from workbench.quantities.noise import quantised_spectra, type_a_spectra
 
 Floats = npt.NDArray[np.float64]
 Complexes = npt.NDArray[np.complex128]
@@ -26,8 +26,6 @@ _SINE_SHARE = 0.1 / math.sqrt(3)
 """A trace's induction may be distorted by 10 %, evenly distributed; our assumption, no source."""
 _NOT_IN_A_TRACE = ("form_factor", "induction_distortion")
 """Its induction was taken as a sine: the waveform's own figures would only say so."""
-DRAWS = 96
-"""Noise draws where the scatter between cycles cannot be seen."""
 
 
 @dataclass(frozen=True)
@@ -60,11 +58,12 @@ def figures(loop: Loop, steps: tuple[float, float]) -> Figures:
     cycles, or, with too few cycles, from seeded draws of the noise that the mean cycle left.
     """
     uncertain = _uncertain_inputs(loop)
-    spectra, dof, factor = _type_a_spectra(loop)
-    coarse = _quantised_spectra(loop, steps)
+    spectra, dof, factor = type_a_spectra(loop.waveform)
+    coarse = quantised_spectra(loop.waveform, steps)
     assumed = _without_the_assumption(loop)
     noise = point_noise(loop.waveform.frequency, loop.setup, loop.kept, loop.waveform.harmonic_noise)
-    found = _all_variants(loop, uncertain, np.concatenate([spectra, coarse, assumed]), noise)
+    turned = np.concatenate([spectra * loop.turn, coarse * loop.turn, assumed])
+    found = _all_variants(loop, uncertain, turned, noise)
     pairs, tail = 2 * len(uncertain), 1 + 2 * len(uncertain)
     values, budget, degrees = {}, {}, {}
     few = float(enlargement(dof))
@@ -113,42 +112,6 @@ def _all_variants(
     return {name: found[name] for name in QUANTITIES}
 
 
-def _type_a_spectra(loop: Loop) -> tuple[Complexes, float, float]:
-    """Spectra whose spread times a factor is the scatter, and its degrees of freedom."""
-    waveform = loop.waveform
-    if waveform.windows is not None:
-        return waveform.windows.harmonics() * loop.turn, waveform.windows.scale.dof, waveform.windows.scale.factor
-    drawn = _draws(loop, waveform.harmonic_noise, DRAWS) + _gap_draws(loop, DRAWS)
-    return loop.recorded + drawn, DRAWS - 1.0, 1.0
-
-
-def _draws(loop: Loop, rms: Floats, count: int) -> Complexes:
-    """Seeded noise on every harmonic; `rms` of a complex amplitude, by channel."""
-    parts = _normal_draws(count, 4 * loop.recorded.shape[-1]).reshape(count, -1, 2, 2)
-    noise = (parts[..., 0] + 1j * parts[..., 1]) / math.sqrt(2)
-    return np.asarray(np.swapaxes(noise, 1, 2) * rms[:, None])
-
-
-@lru_cache(maxsize=8)
-def _normal_draws(count: int, width: int) -> Floats:
-    """Seeded normal draws, (count, width); the first columns, those of low harmonics, exactly uncorrelated.
-
-    The same draws serve every run: what chance correlates in them would bias every uncertainty alike.
-    """
-    drawn = np.random.default_rng(count).standard_normal((count, width))
-    exact = min(count // 2, width)
-    basis, _ = np.linalg.qr(np.concatenate([np.ones((count, 1)), drawn[:, :exact]], axis=1))
-    drawn[:, :exact] = basis[:, 1:] * math.sqrt(count - 1)
-    return np.asarray(drawn)
-
-
-def _gap_draws(loop: Loop, count: int) -> Complexes:
-    """What the uncertain step between the ends of a one-cycle record leaves: a sawtooth."""
-    order = np.arange(1, loop.recorded.shape[-1] + 1)
-    size = np.random.default_rng(count + 1).standard_normal((count, 2, 1)) * loop.waveform.gap_noise[:, None]
-    return np.asarray(size * 1j / (2 * np.pi * order) * loop.turn)
-
-
 def _without_the_assumption(loop: Loop) -> Complexes:
     """For a trace: the spectrum as if the integrator needed no undoing; else none.
 
@@ -163,14 +126,3 @@ def _without_the_assumption(loop: Loop) -> Complexes:
     ideal = loop.recorded.copy()
     ideal[1] *= np.exp(1j * lead)
     return ideal[None]
-
-
-def _quantised_spectra(loop: Loop, steps: tuple[float, float]) -> Complexes:
-    """Spectra with the error of quantisation, where the noise is too small to show it as scatter."""
-    step = np.asarray(steps, float)
-    hidden = loop.waveform.noise < 0.5 * step
-    if not hidden.any():
-        return np.empty((0, *loop.recorded.shape), complex)
-    # Without noise every cycle meets the same codes: only the samples of one cycle average out.
-    rms = np.where(hidden, step / math.sqrt(12 * loop.waveform.samples_per_cycle), 0.0)
-    return loop.recorded + _draws(loop, rms, DRAWS // 4)
