@@ -50,7 +50,8 @@ def ellipse(amplitude: float, line: RunLine) -> RunResult:
     dof = {name: 9 * (math.hypot(SHARED, SCATTER) / SCATTER) ** 4 for name in budget}
     return RunResult(
         field=amplitude * np.sin(phase() + ANGLE), induction=tip * np.sin(phase()), values=values,
-        uncertainties=total, dof=dof, budget=budget, marks=("few cycles",), seen={"few cycles": "few cycles: one seen."},
+        uncertainties=total, dof=dof, budget=budget, marks=("few cycles",),
+        seen={"few cycles": "few cycles: one seen."},
     )  # fmt: skip
 
 
@@ -81,7 +82,9 @@ class Bench:
     def add(self, capture: str, content: float | str, **changes: Any) -> RunLine:
         """Write a capture and its line; settings not said are those of a loop at 50 Hz and 23 degC."""
         self.write(capture, content)
-        peak = {} if "peak_induction" in changes else {"peak_field": float(content) if isinstance(content, float) else 1.0}
+        peak = (
+            {} if "peak_induction" in changes else {"peak_field": float(content) if isinstance(content, float) else 1.0}
+        )
         line = RunLine(
             **{
                 "line": len(self.lines) + 2, "capture": capture, "specimen": "R1", "circuit": "main", "kind": "loop",

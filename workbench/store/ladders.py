@@ -90,8 +90,9 @@ def read_ladders(figures: Floats, budget: Array, by: int, at: Floats) -> Reading
     against log of the tip.  The uncertainty of the tips goes along with the slope, signed, source by
     source: what moves figure and tip together (the section, for one) largely cancels.  The error of the
     straight line is the quadratic term of Newton's interpolation formula through a third rung, on the
-    side where it is larger; with two rungs only, that of a curve as bent as the step is high.  It is
-    put with the source `method`.  Degrees of freedom: the lower of both rungs.
+    side where it is larger; twice that at the ends, where there is one side; with two rungs only, that of
+    a curve as bent as the step is high (both our choice, no source).  It is put with the source `method`.
+    Degrees of freedom: the lower of both rungs.
     """
     values, dof = figures[0], figures[2]
     rungs = find_rungs(values[by], at)
@@ -133,7 +134,9 @@ def _line(along: Floats, rungs: Rungs) -> _Line:
     step = there - here
     share = np.where(step > 0, (rungs.wanted - here) / step, 0.0)
     slope = np.where(step > 0, (second - first) / step, 0.0)
-    bend = np.fmax(_bend(along, rungs, slope, rungs.low - 1), _bend(along, rungs, slope, rungs.high + 1))
+    below, above = _bend(along, rungs, slope, rungs.low - 1), _bend(along, rungs, slope, rungs.high + 1)
+    # At either end there is a third rung on one side only, and the bend may grow towards the other.
+    bend = np.where(np.isfinite(below) & np.isfinite(above), 1, 2) * np.fmax(below, above)
     span = np.abs((rungs.wanted - here) * (there - rungs.wanted))
     # No third rung: a curve whose quadratic term is as large as the step itself.
     unknown = np.where(step > 0, np.abs(slope) / step, 0.0)

@@ -22,6 +22,7 @@ from workbench.store.campaign import prepare_store, update_campaign
 from workbench.store.committer import Committer
 from workbench.store.compaction import compact
 from workbench.store.fingerprint import settings_fingerprints
+from workbench.store.interrupts import Interrupts
 from workbench.store.open import Store
 from workbench.store.writer import Writer
 
@@ -65,10 +66,11 @@ def reduce(campaign: Campaign, into: str | os.PathLike[str], workers: int = 1, p
         update_campaign(writer, campaign)
         lines = _to_do(campaign, writer, fingerprints)
         committer = Committer(writer, campaign, fingerprints)
-        try:
-            _work(campaign, lines, workers, progress, committer)
-        finally:
-            committer.finish()
+        with Interrupts() as interrupts:
+            try:
+                _work(campaign, lines, workers, progress, committer, interrupts)
+            finally:
+                committer.finish()
         compact(writer, committer.about)
     return Store(store)
 
@@ -88,7 +90,14 @@ def _hash_or_nothing(campaign: Campaign, line: RunLine) -> str:
         return ""  # gone or unreadable: the reduction will say how
 
 
-def _work(campaign: Campaign, lines: Sequence[RunLine], workers: int, progress: bool, committer: Committer) -> None:
+def _work(
+    campaign: Campaign,
+    lines: Sequence[RunLine],
+    workers: int,
+    progress: bool,
+    committer: Committer,
+    interrupts: Interrupts,
+) -> None:
     # None: tqdm looks itself whether there is a terminal or a notebook.
     shown = None if progress else True
     with (
@@ -98,6 +107,7 @@ def _work(campaign: Campaign, lines: Sequence[RunLine], workers: int, progress: 
         for some in outcomes:
             committer.take(some)
             bar.update(len(some))
+            interrupts.check()
 
 
 def _outcomes(campaign: Campaign, lines: Sequence[RunLine], workers: int) -> Generator[tuple[Outcome, ...], None, None]:

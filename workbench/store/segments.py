@@ -94,16 +94,27 @@ def write_segment(store: Path, arrays: Arrays, keys: Mapping[str, Any], about: M
     arrays : Arrays     of at most `SEGMENT_RUNS` runs
     keys : {name: (run,)}    settings and names of the runs
     about : global attributes
+
+    Raises
+    ------
+    StoreError          the disk is full or may not be written to
     """
     folder = store / FOLDER
     name = f"{uuid.uuid4().hex}.nc"
     target, partial = folder / name, folder / f"{name}.partial"
     encoding = {each: {**how, "chunksizes": _chunks(each, len(arrays.field))} for each, how in _ENCODING.items()}
-    _dataset(arrays, keys, about).to_netcdf(partial, engine="h5netcdf", encoding=encoding)
-    _flush(partial)
-    size = partial.stat().st_size
-    os.replace(partial, target)
-    _flush(folder)
+    try:
+        _dataset(arrays, keys, about).to_netcdf(partial, engine="h5netcdf", encoding=encoding)
+        _flush(partial)
+        size = partial.stat().st_size
+        os.replace(partial, target)
+        _flush(folder)
+    except OSError as error:
+        partial.unlink(missing_ok=True)
+        raise StoreError(
+            f"Writing a segment of the store {store}: wanted room on the disk and the permission to write; "
+            f"found: {error.strerror or error}. Mend that and reduce again: what was committed before is kept."
+        ) from error
     return Segment(name, size)
 
 

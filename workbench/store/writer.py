@@ -45,9 +45,11 @@ class Writer:
         try:
             self._held.enter_context(_locked(self.store))
             self.connection = self._held.enter_context(connected(self.store, WRITE_SECONDS))
-            # Somebody with a tool of their own may hold the catalog itself.
-            with transaction(self.connection, "IMMEDIATE"):
-                known = {name for (name,) in self.connection.execute("SELECT name FROM segments")}
+            # Somebody with a tool of their own may hold the catalog itself.  Rolled back and not
+            # committed, for which SQLite would wait until no reader is there.
+            self.connection.execute("BEGIN IMMEDIATE")
+            known = {name for (name,) in self.connection.execute("SELECT name FROM segments")}
+            self.connection.execute("ROLLBACK")
             self.connection.execute(f"PRAGMA busy_timeout = {int(COMMIT_SECONDS * 1000)}")
             (self.store / FOLDER).mkdir(exist_ok=True)
             sweep(self.store, known)
