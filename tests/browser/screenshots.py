@@ -17,9 +17,24 @@ from playwright.sync_api import Page, sync_playwright
 WIDTHS = {"wide": 1600, "usual": 1440, "narrow": 900}
 
 
+ACTS = {
+    "holes": "rows = wb.store.pointers().rows\n"
+    "ring = int((rows < 0).sum(axis=(1, 2, 3)).argmax())\n"
+    "hole = [int(place[0]) for place in (rows[ring] < 0).nonzero()]\n"
+    "wb.selection.choose(front=wb.store.pointers().specimens[ring], "
+    "temperature=float(wb.store.pointers().temperatures[hole[2]]))",
+    "doubtful": "run = wb.store.runs.isel(run=int(wb.store.runs.seen.str.contains('clipped').argmax()))\n"
+    "wb.selection.choose(front=str(run.specimen.item()), peak=run.peak_field.item(), frequency=run.frequency.item(), "
+    "temperature=run.temperature.item())",
+    "along-frequency": "wb.selection.choose(along='frequency', peak=100.0)",
+    "along-specimen": "wb.selection.choose(along='specimen', specimens=tuple(wb.store.pointers().specimens))",
+}
+"""Further states, shown in the usual width and light theme."""
+
+
 def first_cell(store: Path | None) -> str:
     if store is not None:
-        return f"import workbench\nworkbench.Workbench(workbench.open_store({str(store.resolve())!r}))"
+        return f"import workbench\nwb = workbench.Workbench(workbench.open_store({str(store.resolve())!r}))\nwb"
     helpers = Path(__file__).parents[1] / "views"
     return (
         f"import sys\nsys.path.insert(0, {str(helpers)!r})\nfrom closed_form_store import closed_form_store\n"
@@ -54,6 +69,14 @@ def main() -> None:
                     page.keyboard.press("Control+b")  # without the file browser 780 px are left
                 page.wait_for_timeout(1500)
                 shoot(page, wanted.folder / f"{'dark' if dark else 'light'}-{width_name}.png")
+                page.close()
+            for act, code in [] if dark else ACTS.items():
+                head, last = first_cell(wanted.store).rsplit("\n", 1)
+                write_notebook(Path(name) / f"{act}.ipynb", f"{head}\n{code}\n{last}")
+                page = browser.new_page(viewport={"width": 1440, "height": 900})
+                open_and_run(page, lab.page_of(f"{act}.ipynb"))
+                page.wait_for_timeout(1500)
+                shoot(page, wanted.folder / f"light-{act}.png")
                 page.close()
             browser.close()
 

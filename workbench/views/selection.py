@@ -11,7 +11,7 @@ import traitlets
 ALONG = ("peak", "frequency", "temperature", "specimen")
 """The axes along which there can be one loop each."""
 
-FITS = ("all runs", "chosen loop")
+FITS = ("opening", "all runs", "chosen loop")
 """What the axes of the loops are made to fit."""
 
 
@@ -30,7 +30,7 @@ class Choice:
     along: str = "peak"
     quantity: str = ""
     """Of the map."""
-    fit: str = "all runs"
+    fit: str = FITS[0]
     """What the axes of the loops fit."""
     show_set_aside: bool = False
 

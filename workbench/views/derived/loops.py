@@ -14,11 +14,13 @@ from workbench.base.uncertainty import with_uncertainty
 from workbench.base.vocabulary import QUANTITIES
 from workbench.views.colours import Look, alloy_looks, strengths
 from workbench.views.derived.index import RunIndex, spelled
-from workbench.views.derived.ticks import AxisPlan, finite_range, symmetric_axis
+from workbench.views.derived.ticks import AxisPlan, finite_range, round_up, symmetric_axis
 from workbench.views.selection import Choice
 
 DISPLAY_POINTS = 160
 MOST_LOOPS = 48
+OPENINGS = 4.0
+"""Largest coercivities of the family that `opening` shows on each side."""
 Drawn = npt.NDArray[np.float32]
 
 
@@ -119,12 +121,11 @@ def _crossings(values: npt.NDArray[np.float64]) -> npt.NDArray[np.intp]:
 def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
     """The family of loops along the chosen axis, with the loop of the held setting on top."""
     looks = alloy_looks(index.alloy_names)
-    factor, unit, largest_field, largest_induction = _frame(index, choice)
-    if choice.fit == "chosen loop":
-        largest_field, largest_induction = _tips(index, choice) or (largest_field, largest_induction)
     steps = _steps(index, choice)
     members = [(each, index.row(each.front, each.peak, each.frequency, each.temperature)) for each in steps]
     members = [(each, row) for each, row in members if row >= 0]
+    factor, unit = _field_unit(index, choice)
+    largest_field, largest_induction = _frame(index, choice, [row for _, row in members])
     kept, left_out = _at_most(members, choice)
     drawn = kept if choice.along != "specimen" else []
     shapes = [thinned(index.field[row] / factor, index.induction[row]) for _, row in drawn]
@@ -142,8 +143,8 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
         induction_axis=symmetric_axis(largest_induction),
         field_label=f"H / {unit}",
         look=front,
-        field=np.array([h for h, _ in shapes], np.float32).reshape(len(shapes), -1),
-        induction=np.array([b for _, b in shapes], np.float32).reshape(len(shapes), -1),
+        field=np.array([h for h, _ in shapes], np.float32),
+        induction=np.array([b for _, b in shapes], np.float32),
         strength=strengths(len(shapes)),
         tip_field=(index.values("field_tip")[rows] / factor).astype(np.float32),
         tip_induction=index.values("induction_tip")[rows].astype(np.float32),
@@ -181,21 +182,34 @@ def _at_most(members: list[tuple[Choice, int]], choice: Choice) -> tuple[list[tu
     return [members[place] for place in places], len(members) - len(places)
 
 
-def _frame(index: RunIndex, choice: Choice) -> tuple[float, str, float, float]:
-    """Scale of H, its unit, and the largest H and B of the chosen specimens over all their runs.
+def _field_unit(index: RunIndex, choice: Choice) -> tuple[float, str]:
+    """Scale of H and its unit, by the largest field of the chosen specimens."""
+    _, field = finite_range(index.values("field_tip")[index.rows_of(choice.specimens)])
+    return (1000.0, "kA/m") if field >= 10_000 else (1.0, "A/m")
 
-    Over all frequencies and temperatures, so that stepping never moves the axes.
+
+def _frame(index: RunIndex, choice: Choice, family: list[int]) -> tuple[float, float]:
+    """Half the width and height that the axes must hold, A/m and T.
+
+    Along the ladder it is that of the chosen specimens over all their runs, so that stepping never
+    moves the axes.  `opening` narrows the field to where the family is open: a soft alloy driven
+    far beyond its knee would else be a vertical stroke.
     """
-    rows = index.rows_of(choice.specimens)
+    held = (choice.peak, choice.frequency, choice.temperature)
+    one = index.row(choice.front, *held)
+    if choice.fit == "chosen loop" and one >= 0:
+        rows = np.array([one])
+    elif choice.fit == "opening" and choice.along != "peak":
+        beside = [index.row(name, *held) for name in choice.specimens]
+        rows = np.array([row for row in (*family, *beside) if row >= 0], dtype=int)
+    else:
+        rows = index.rows_of(choice.specimens)
     _, field = finite_range(index.values("field_tip")[rows])
     _, induction = finite_range(index.values("induction_tip")[rows])
-    return (1000.0, "kA/m", field, induction) if field >= 10_000 else (1.0, "A/m", field, induction)
-
-
-def _tips(index: RunIndex, choice: Choice) -> tuple[float, float] | None:
-    row = index.row(choice.front, choice.peak, choice.frequency, choice.temperature)
-    tips = [float(index.values(name)[row]) for name in ("field_tip", "induction_tip")] if row >= 0 else []
-    return (tips[0], tips[1]) if tips and all(math.isfinite(tip) and tip > 0 for tip in tips) else None
+    _, opening = finite_range(np.abs(index.values("coercivity")[family]))
+    if choice.fit == "opening" and opening > 0:
+        field = min(field, round_up(OPENINGS * opening))
+    return field, induction
 
 
 def _curve(index: RunIndex, choice: Choice, specimen: str, factor: float, looks: dict[str, Look]) -> Curve | None:

@@ -17,9 +17,6 @@ from workbench.views.derived.index import Floats, RunIndex, spelled
 from workbench.views.derived.ticks import AxisPlan, finite_range, linear_axis, log_axis, named_axis
 from workbench.views.selection import Choice
 
-EVEN_RATIO = 6.0
-"""A ladder whose inductions span less than this is drawn on a linear axis."""
-
 
 @dataclass(frozen=True, eq=False)
 class Tiles:
@@ -85,8 +82,7 @@ def loss_map(index: RunIndex, choice: Choice) -> LossMap:
     """The quantity of the specimen in front at the held temperature, over frequency and induction reached."""
     columns = _columns(index, choice)
     every = [place for column in columns for place in column]
-    low, high = finite_range(np.array([place.induction for place in every]), positive=True)
-    log_y = bool(high / low > EVEN_RATIO) if low > 0 else False
+    log_y = _reads_better_in_log(columns)
     edges = _frequency_edges([column[0].frequency for column in columns])
     boxes = [_boxes(column, edges[number], log_y) for number, column in enumerate(columns)]
     flat = list(zip(every, chain.from_iterable(boxes), strict=True))
@@ -151,6 +147,23 @@ def _columns(index: RunIndex, choice: Choice) -> list[list[_Place]]:
         # Settings at which no frequency has a run cannot be placed and are counted nowhere.
         columns.append(sorted((place for place in column if place.induction > 0), key=lambda place: place.induction))
     return [column for column in columns if column]
+
+
+def _reads_better_in_log(columns: list[list[_Place]]) -> bool:
+    """Whether a logarithmic axis of induction leaves more room to the narrowest tenth of the steps.
+
+    A ladder in the Rayleigh range is even in the logarithm, one that ends in saturation is not.
+    """
+    ladders = [np.array([place.induction for place in column]) for column in columns if len(column) > 1]
+    if not ladders:
+        return False
+    every = np.concatenate(ladders)
+    low, high = float(every.min()), float(every.max())
+    if not high > low:
+        return False
+    linear = np.concatenate([np.diff(ladder) for ladder in ladders]) / (high - low)
+    logarithmic = np.concatenate([np.diff(np.log(ladder)) for ladder in ladders]) / math.log(high / low)
+    return bool(np.quantile(logarithmic, 0.1) > np.quantile(linear, 0.1))
 
 
 def _guessed(frequency: float, frequencies: list[float], rows: list[int], reached: Floats) -> float:

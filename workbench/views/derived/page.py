@@ -24,18 +24,25 @@ class Page:
     readout: Readout
     key: tuple[tuple[str, Look, str], ...]
     """(alloy, how it is drawn, its chosen specimens) in the order of the store."""
+    doubts: bool
+    """Whether a sign of doubt is in view."""
     status: str
 
 
 def page(index: RunIndex, choice: Choice) -> Page:
     """The page of a settled choice of at least one specimen."""
+    loops, permeability = loop_family(index, choice), permeability_curves(index, choice)
+    tiles = loss_map(index, choice)
     return Page(
         choice=choice,
-        loops=loop_family(index, choice),
-        permeability=permeability_curves(index, choice),
-        map=loss_map(index, choice),
+        loops=loops,
+        permeability=permeability,
+        map=tiles,
         readout=readout(index, choice),
         key=_key(index, choice),
+        doubts=bool(
+            loops.tip_doubtful.any() or len(tiles.doubtful) or any(curve.doubtful.any() for curve in permeability.curves)
+        ),
         status=status_sentence(index, choice),
     )
 

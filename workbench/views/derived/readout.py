@@ -87,7 +87,9 @@ def _column(index: RunIndex, choice: Choice, specimen: str) -> Column:
 
 
 def _figure(index: RunIndex, name: str, row: int) -> str:
-    return with_uncertainty(float(index.values(name)[row]), float(index.values("u_" + name)[row]))
+    value, spread = float(index.values(name)[row]), float(index.values("u_" + name)[row])
+    # A spread at the rounding of the machine says that none was stated, not that the figure is perfect.
+    return with_uncertainty(value, spread if spread > 1e-9 * abs(value) else math.nan)
 
 
 def _seen(text: str) -> dict[str, str]:

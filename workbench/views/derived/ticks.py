@@ -132,6 +132,18 @@ def _step(span: float, wanted: float) -> float:
     return float(min((1, 2, 2.5, 5, 10), key=lambda lead: abs(math.log(lead * scale / rough))) * scale)
 
 
+def round_up(value: float) -> float:
+    """The next of 1, 2, 5 times a power of ten, so that a limit made of it seldom moves.
+
+    Examples
+    --------
+    >>> round_up(58.0), round_up(2000.0)
+    (100.0, 2000.0)
+    """
+    decade = 10.0 ** math.floor(math.log10(value))
+    return next(lead * decade for lead in (1.0, 2.0, 5.0, 10.0) if lead * decade >= value * (1 - 1e-9))
+
+
 def finite_range(values: np.ndarray, positive: bool = False) -> tuple[float, float]:
     """Smallest and largest finite (and positive) value; NaN, NaN where there is none."""
     good = np.isfinite(values) & (values > 0) if positive else np.isfinite(values)

@@ -7,7 +7,7 @@ from typing import Any
 
 import ipywidgets
 
-from workbench.base.vocabulary import QUANTITIES, label
+from workbench.base.vocabulary import QUANTITIES
 from workbench.views.derived.index import Axis, RunIndex, spelled
 from workbench.views.selection import ALONG, FITS, Choice
 
@@ -26,7 +26,7 @@ class Controls(ipywidgets.Box):
         self.front = _dropdown("in front")
         self.along = _dropdown("one loop per")
         self.along.options = ALONG
-        self.fit = _dropdown("loop axes fit")
+        self.fit = _dropdown("axes fit")
         self.fit.options = FITS
         self.quantity = _dropdown("map of")
         self.quantity.options = [(_quantity_name(name), name) for name in QUANTITIES]
@@ -89,7 +89,7 @@ def _fill_steps(control: Any, axis: Axis, unit: str, value: float | None) -> Non
 
 
 def _quantity_name(name: str) -> str:
-    return f"{name.replace('_', ' ')}, {label(name)}"
+    return f"{QUANTITIES[name].symbol}, {name.replace('_', ' ')}"
 
 
 def _dropdown(description: str) -> ipywidgets.Dropdown:

@@ -18,11 +18,11 @@ STYLE = """<style>
 .wb-controls .wb-who { flex: 1 1 190px; min-width: 180px; overflow: visible; }
 .wb-controls .wb-who > .widget-label { height: 20px; line-height: 20px; font-size: 11px; opacity: 0.8; }
 .wb-controls .wb-who select { height: 76px; }
-.wb-controls .wb-rest { flex: 4 1 520px; display: grid; grid-template-columns: repeat(auto-fit, minmax(214px, 1fr));
+.wb-controls .wb-rest { flex: 4 1 520px; display: grid; grid-template-columns: repeat(auto-fit, minmax(212px, 1fr));
   gap: 2px 14px; align-content: start; overflow: visible; }
 .wb-controls .wb-rest > * { width: auto; min-width: 0; }
-.wb-controls .wb-rest .widget-label { width: 82px; flex: 0 0 82px; text-align: left; }
-.wb-controls .widget-readout { min-width: 62px; text-align: right; }
+.wb-controls .wb-rest .widget-label { width: 86px; flex: 0 0 86px; text-align: left; font-size: 12px; }
+.wb-controls .widget-readout { min-width: 58px; font-size: 12px; text-align: right; }
 .wb-panes { display: flex; flex-flow: row wrap; gap: 0 8px; overflow: visible; }
 .wb-panes > .wb-pane { flex: 1 1 0%; min-width: 240px; overflow: hidden; margin: 0; }
 .wb-pane-head { height: 42px; overflow: hidden; font-size: 12px; padding: 0 2px; }

@@ -105,7 +105,7 @@ class Workbench(ipywidgets.VBox):
             shown: tuple[Shown, ...] = (made.loops, made.permeability, made.map)
             for pane, each in zip(self.panes, shown, strict=True):
                 pane.show(each)
-            _say(self.alloy_key, markup.key(made.key, bool(made.map.hole_texts), bool(self._glance[1].doubtful)))
+            _say(self.alloy_key, markup.key(made.key, bool(made.map.hole_texts), made.doubts))
             _say(self.readout, markup.readout_table(made.readout))
             self.stepper.show(made.loops)
             self.page = made
