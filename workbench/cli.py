@@ -51,7 +51,7 @@ def main() -> None:
         number = getattr(signal, name, None)
         if number is not None and signal.getsignal(number) is signal.SIG_DFL:
             signal.signal(number, _stopped)
-    app()
+    app(prog_name="workbench")
 
 
 def _stopped(number: int, _frame: object) -> None:
@@ -96,7 +96,7 @@ def _plain_errors() -> Iterator[None]:
         _debug()
         _end(
             f"Something unforeseen happened, which is a fault of the program: {type(error).__name__}: {error}. "
-            "Please report it, with what WORKBENCH_DEBUG=1 before the command prints.",
+            "Please report it; with WORKBENCH_DEBUG=1 set, the same command prints the details to send along.",
             NOTHING_DONE,
         )
 

@@ -28,8 +28,8 @@ HOSTILE = "[red]<img src=x onerror=alert(1)>"
         (["set_aside", "x"], "Did you mean 'set-aside'?"),
         (["reduce", "bench", "--worker", "2"], "--workers"),
         (["reduce"], "FOLDER"),
-        (["reduce", "bench", "--workers", "two"], "two"),
-        (["reduce", "bench", "--workers", "0"], "0"),
+        (["reduce", "bench", "--workers", "two"], "--workers"),
+        (["reduce", "bench", "--workers", "0"], "--workers"),
         (["reduce", "nowhere"], "nowhere"),
         (["open", "nowhere"], "nowhere"),
         (["table", "nowhere"], "nowhere"),
@@ -130,12 +130,18 @@ def test_control_c_says_that_what_was_done_is_kept(monkeypatch: pytest.MonkeyPat
     assert "Stopped" in found.output
 
 
+def stand_in_for_jupyterlab(place: Path) -> str:
+    """A module path on which ``-m jupyterlab`` says one word and ends."""
+    package = place / "stand-in" / "jupyterlab"
+    package.mkdir(parents=True)
+    (package / "__init__.py").touch()
+    (package / "__main__.py").write_text("print('served')", encoding="utf-8")
+    return str(package.parent)
+
+
 def test_open_of_a_store_whose_campaign_is_gone(workbench: Run, store: Path, campaign: Path, tmp_path: Path) -> None:
     shutil.rmtree(campaign)
-    stand_in = tmp_path / "stand-in" / "jupyterlab"
-    stand_in.mkdir(parents=True)
-    (stand_in / "__main__.py").write_text("print('served')", encoding="utf-8")
-    found = workbench("open", "bench.store", PYTHONPATH=str(stand_in.parent))
+    found = workbench("open", "bench.store", PYTHONPATH=stand_in_for_jupyterlab(tmp_path))
     assert found.returncode == 0, found.stderr
     assert "is not there" in found.stdout
     assert "served" in found.stdout
@@ -148,10 +154,7 @@ def test_open_goes_on_after_failures_and_never_overwrites_the_notebook(
     with (campaign / "runs.csv").open(newline="", encoding="utf-8") as file:
         (campaign / next(csv.DictReader(file))["capture"]).unlink()
     (tmp_path / "bench.ipynb").write_text("mine", encoding="utf-8")
-    stand_in = tmp_path / "stand-in" / "jupyterlab"
-    stand_in.mkdir(parents=True)
-    (stand_in / "__main__.py").write_text("print('served')", encoding="utf-8")
-    found = workbench("open", "bench", "--workers", "1", PYTHONPATH=str(stand_in.parent))
+    found = workbench("open", "bench", "--workers", "1", PYTHONPATH=stand_in_for_jupyterlab(tmp_path))
     assert found.returncode == 1, found.stderr
     assert "served" in found.stdout
     assert (tmp_path / "bench.ipynb").read_text(encoding="utf-8") == "mine"
