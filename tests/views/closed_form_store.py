@@ -51,10 +51,12 @@ class FakeStore:
             good &= np.array(runs.standing.values == "kept")
         names = ("specimen", "peak_field", "frequency", "temperature")
         axes = [tuple(dict.fromkeys(runs[name].values[good])) for name in names[:1]]
-        axes += [tuple(sorted(set(runs[name].values[good]))) for name in names[1:]]
+        axes += [tuple(np.unique(runs[name].values[good])) for name in names[1:]]  # one NaN for all
         rows = np.full([len(axis) for axis in axes], -1, np.int32)
+        places = [[str(value) for value in axis] for axis in axes]
         for row in np.flatnonzero(good)[::-1]:
-            rows[tuple(axis.index(runs[name].values[row]) for axis, name in zip(axes, names, strict=True))] = row
+            setting = (str(runs[name].values[row]) for name in names)
+            rows[tuple(place.index(value) for place, value in zip(places, setting, strict=True))] = row
         return SimpleNamespace(
             specimens=axes[0],
             peaks=np.array(axes[1], float),

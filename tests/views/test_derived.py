@@ -1,6 +1,5 @@
 """What the panes show, checked against the closed forms that the store is made of."""
 
-import time
 from dataclasses import replace
 
 import numpy as np
@@ -15,7 +14,7 @@ from workbench.views.derived.overview import overview
 from workbench.views.derived.page import page
 from workbench.views.derived.permeability import permeability_curves
 from workbench.views.derived.readout import readout, slice_in_view, status_sentence
-from workbench.views.derived.settle import settled, start
+from workbench.views.derived.settle import start
 from workbench.views.derived.ticks import linear_axis, log_axis, symmetric_axis
 
 PHASE = 2 * np.pi * np.arange(512) / 512
@@ -162,9 +161,8 @@ def test_tiles_touch_and_hold_their_run(index, choice):
 
 def test_holes_say_which_kind(index, choice):
     shown = loss_map(index, choice)
-    kinds = {
-        (each["peak"], each["frequency"]): text for each, text in zip(shown.holes.choices, shown.hole_texts, strict=True)
-    }
+    pairs = zip(shown.holes.choices, shown.hole_texts, strict=True)
+    kinds = {(each["peak"], each["frequency"]): text for each, text in pairs}
     assert kinds == {
         (20.0, 50.0): "no figure",
         (640.0, 50.0): "set aside",
@@ -269,18 +267,3 @@ def test_log_axes_have_few_ticks_inside_their_limits(low, ratio):
 def test_linear_axes_have_four_to_seven_ticks(high):
     assert 3 <= len(linear_axis(0.0, high).ticks) <= 8
     assert 3 <= len(symmetric_axis(high).ticks) <= 7
-
-
-# scale
-
-
-def test_the_work_of_an_act_does_not_grow_with_the_store():
-    """Operations and not seconds: what one act reads of the store is the same for a larger one."""
-    small, large = closed_form_store(("R41a",)), closed_form_store()
-    for store in (small, large):
-        index = run_index(store)
-        choice = settled(index, replace(start(index), specimens=("R41a",)))
-        page(index, choice)
-        begun = time.perf_counter()
-        page(index, choice)
-        assert time.perf_counter() - begun < 1.0, "a page took over a second: something walks over all runs"

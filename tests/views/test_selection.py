@@ -20,7 +20,7 @@ def test_keys_of_a_later_version_are_passed_over():
 
 
 def test_choosing_an_unknown_thing_names_what_there_is():
-    with pytest.raises(KeyError, match="wanted some of .*temperature.*found \\['colour'\\]"):
+    with pytest.raises(KeyError, match=r"wanted some of .*temperature.*found \['colour'\]"):
         Selection().choose(colour="red")
 
 

@@ -158,16 +158,24 @@ def test_an_empty_choice_keeps_the_picture_and_says_so(bench):
     assert "R52a" in bench.status.value
 
 
+def test_a_specimen_no_longer_chosen_leaves_the_front(bench):
+    bench.controls.specimens.value = ("R52a", "R60a")
+    assert (bench.selection.specimens, bench.selection.front) == (("R52a", "R60a"), "R52a")
+    bench.selection.front = "R41b"
+    assert bench.selection.specimens == ("R52a", "R60a", "R41b")
+
+
 def test_a_failure_is_said_and_the_last_choice_comes_back(bench, monkeypatch):
     def fails(*_):
         raise RuntimeError("<b>broken</b>")
 
     before = bench.selection.choice()
     monkeypatch.setattr("workbench.views.widgets.workbench.page", fails)
-    bench.selection.peak = 160.0
+    bench.controls.peak.value = 160.0
     assert "could not be shown" in bench.status.value
     assert "&lt;b&gt;broken" in bench.failure.value
     assert bench.selection.choice() == before
+    assert bench.controls.peak.value == before.peak
     monkeypatch.undo()
     bench.selection.peak = 160.0
     assert bench.failure.value == ""
@@ -200,7 +208,8 @@ def test_models_neither_grow_nor_stay(store):
     bench = Workbench(store)
     first = len(_instances)
     for act in range(50):
-        bench.selection.choose(peak=PEAKS[act % 6], frequency=[50.0, 400.0][act % 2], along=["peak", "specimen"][act % 2])
+        along = ["peak", "specimen"][act % 2]
+        bench.selection.choose(peak=PEAKS[act % 6], frequency=[50.0, 400.0][act % 2], along=along)
     assert len(_instances) == first
     bench.close()
     assert len(_instances) == before

@@ -40,11 +40,13 @@ def page(index: RunIndex, choice: Choice) -> Page:
         map=tiles,
         readout=readout(index, choice),
         key=_key(index, choice),
-        doubts=bool(
-            loops.tip_doubtful.any() or len(tiles.doubtful) or any(curve.doubtful.any() for curve in permeability.curves)
-        ),
+        doubts=bool(loops.tip_doubtful.any() or len(tiles.doubtful) or _any_doubtful(permeability)),
         status=status_sentence(index, choice),
     )
+
+
+def _any_doubtful(permeability: PermeabilityCurves) -> bool:
+    return any(bool(curve.doubtful.any()) for curve in permeability.curves)
 
 
 def _key(index: RunIndex, choice: Choice) -> tuple[tuple[str, Look, str], ...]:

@@ -27,7 +27,7 @@ def start(index: RunIndex) -> Choice:
         specimens=chosen,
         front=front,
         frequency=_lowest_common(index, chosen) if chosen else None,
-        temperature=_nearest(temperatures, ROOM_TEMPERATURE),
+        temperature=_nearest(temperatures, ROOM_TEMPERATURE, by_ratio=False),
         quantity=_loss_quantity(index, chosen),
     )
     if begun.frequency not in frequencies:
@@ -35,18 +35,20 @@ def start(index: RunIndex) -> Choice:
     return replace(begun, peak=_peak_near(index, begun, peaks, 1.0))
 
 
-def settled(index: RunIndex, choice: Choice) -> Choice:
+def settled(index: RunIndex, choice: Choice, before: Choice | None = None) -> Choice:
     """The nearest choice that the store can show; values that have a run are left as they are.
 
-    The specimen in front is always among the chosen; peak, frequency and temperature snap to the
-    ladder of the specimen in front, each for itself, so a setting without a run can be chosen and
-    is said to have none.
+    The specimen in front is always among the chosen: one newly brought to the front is added to
+    them, one that was in front `before` and is no longer chosen gives way.  Peak, frequency and
+    temperature snap to the ladder of the specimen in front, each for itself, so a setting without
+    a run can be chosen and is said to have none.
     """
     chosen = tuple(name for name in choice.specimens if name in index.specimens)
     if not chosen:
         return replace(choice, specimens=())
-    front = choice.front if choice.front in index.specimens else ""
-    front = front or chosen[0]
+    known = choice.front in index.specimens
+    gives_way = before is not None and choice.front == before.front and choice.front not in chosen
+    front = choice.front if known and not gives_way else chosen[0]
     if front not in chosen:
         chosen = (*chosen, front)
     peaks, frequencies, temperatures = index.ladder(front)
@@ -57,13 +59,13 @@ def settled(index: RunIndex, choice: Choice) -> Choice:
         front=front,
         peak=_nearest(peaks, choice.peak),
         frequency=_nearest(frequencies, choice.frequency),
-        temperature=_nearest(temperatures, choice.temperature),
+        temperature=_nearest(temperatures, choice.temperature, by_ratio=False),
         quantity=quantity,
     )
 
 
-def _nearest(axis: Axis, value: float | None) -> float | None:
-    """The value of the axis nearest to the wanted one, by ratio where both are positive."""
+def _nearest(axis: Axis, value: float | None, by_ratio: bool = True) -> float | None:
+    """The value of the axis nearest to the wanted one, by ratio where that has a meaning."""
     if value in axis:
         return value
     given = [each for each in axis if each is not None]
@@ -71,7 +73,7 @@ def _nearest(axis: Axis, value: float | None) -> float | None:
         return None
     if value is None:
         return given[0]
-    if value > 0 and all(each > 0 for each in given):
+    if by_ratio and value > 0 and all(each > 0 for each in given):
         return min(given, key=lambda each: abs(math.log(each / value)))
     return min(given, key=lambda each: abs(each - value))
 

@@ -40,13 +40,14 @@ def symmetric_axis(largest: float) -> AxisPlan:
     Examples
     --------
     >>> symmetric_axis(1.43).ticks
-    (-1.0, 0.0, 1.0)
-    >>> symmetric_axis(930.0).ticks
-    (-500.0, 0.0, 500.0)
+    (-1.5, -1.0, -0.5, 0.0, 0.5, 1.0, 1.5)
+    >>> symmetric_axis(1000.0).ticks
+    (-1000.0, -500.0, 0.0, 500.0, 1000.0)
     """
     largest = largest if math.isfinite(largest) and largest > 0 else 1.0
     limit = 1.06 * largest
-    step = _step(limit, 2.6)
+    # Two ticks on each side of zero read best; three are better than one.
+    step = min(_steps(limit), key=lambda each: abs(math.floor(limit / each) - 2.1))
     count = math.floor(limit / step)
     ticks = tuple(float(f"{place * step:.12g}") for place in range(-count, count + 1))
     return AxisPlan(-limit, limit, ticks, tuple(written(tick) for tick in ticks))
@@ -63,7 +64,7 @@ def linear_axis(low: float, high: float) -> AxisPlan:
     if not (math.isfinite(low) and math.isfinite(high)) or low == high:
         middle = low if math.isfinite(low) else 0.0
         low, high = middle - (abs(middle) * 0.1 or 1.0), middle + (abs(middle) * 0.1 or 1.0)
-    step = _step(high - low, 5.0)
+    step = next(each for each in _steps(high - low) if high / each - low / each < 6)
     first, last = math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9)
     ticks = tuple(float(f"{place * step:.12g}") for place in range(first, last + 1))
     return AxisPlan(low, high, ticks, tuple(written(tick) for tick in ticks))
@@ -126,10 +127,10 @@ def written(value: float) -> str:
     ).replace("-", "−")
 
 
-def _step(span: float, wanted: float) -> float:
-    rough = span / wanted
-    scale = 10.0 ** math.floor(math.log10(rough))
-    return float(min((1, 2, 2.5, 5, 10), key=lambda lead: abs(math.log(lead * scale / rough))) * scale)
+def _steps(span: float) -> list[float]:
+    """Round steps around a span, small to large."""
+    decade = 10.0 ** (math.floor(math.log10(span)) - 2)
+    return [lead * decade * 10.0**power for power in range(4) for lead in (1.0, 2.0, 2.5, 5.0)]
 
 
 def round_up(value: float) -> float:

@@ -60,7 +60,7 @@ class Controls(ipywidgets.Box):
         try:
             named = [(f"{name} · {index.alloy_of(name)}", name) for name in index.specimens]
             fill(self.specimens, named, choice.specimens)
-            fill(self.front, [pair for pair in named if pair[1] in choice.specimens], choice.front or None)
+            fill(self.front, named, choice.front or None)
             peaks, frequencies, temperatures = index.ladder(choice.front)
             peak_unit = "T" if index.peak_name == "peak_induction" else "A/m"
             self.peak.description = "B̂ set" if index.peak_name == "peak_induction" else "Ĥ set"

@@ -5,14 +5,14 @@ from __future__ import annotations
 import traceback
 from collections.abc import Hashable, Mapping
 from dataclasses import asdict
-from typing import Any
+from typing import Any, NamedTuple
 
 import ipywidgets
 import xarray as xr
 
 from workbench.bench.cautions import CAUTIONS
 from workbench.views import markup
-from workbench.views.derived.index import StoreLike, run_index
+from workbench.views.derived.index import RunIndex, StoreLike, run_index
 from workbench.views.derived.overview import Overview, overview
 from workbench.views.derived.page import Page, page
 from workbench.views.derived.readout import slice_in_view, status_sentence
@@ -31,6 +31,14 @@ from workbench.views.widgets.style import STYLE
 STATE_FORMAT = 1
 
 
+class _Shown(NamedTuple):
+    """The last good picture."""
+
+    choice: Choice
+    revision: int
+    index: RunIndex
+
+
 class Workbench(ipywidgets.VBox):
     """Loops, permeability and map of a store side by side over one selection.
 
@@ -46,9 +54,10 @@ class Workbench(ipywidgets.VBox):
     """
 
     def __init__(self, store: StoreLike, selection: Selection | None = None) -> None:
+        self._following = False
         self.store = store
         self.page: Page | None = None
-        self._shown: tuple[Choice, int] | None = None
+        self._shown: _Shown | None = None
         self._rendering = False
         self._glance: tuple[Hashable, Overview] | None = None
         self.selection = selection or Selection(**asdict(start(run_index(store))))
@@ -64,6 +73,7 @@ class Workbench(ipywidgets.VBox):
         self.add_class("wb-page")
         self.render()
         self.selection.observe(self._changed)
+        self._following = True
         take_over_cell(str(getattr(store, "path", "")), self)
 
     def _choose(self, values: dict[str, Any]) -> None:
@@ -82,7 +92,7 @@ class Workbench(ipywidgets.VBox):
     def render(self) -> None:
         """Draw what has changed in the selection or the store since the last time, once."""
         state = (self.selection.choice(), self.store.revision)
-        if state == self._shown:
+        if self._shown is not None and state == (self._shown.choice, self._shown.revision):
             return
         self._rendering = True
         try:
@@ -95,7 +105,7 @@ class Workbench(ipywidgets.VBox):
 
     def _show(self, wanted: Choice) -> None:
         index = run_index(self.store, wanted.show_set_aside)
-        choice = settled(index, wanted)
+        choice = settled(index, wanted, self._shown.choice if self._shown else None)
         self.selection.choose(**asdict(choice))
         if self._glance is None or self._glance[0] != index.token:
             self._glance = (index.token, overview(self.store, index))
@@ -111,14 +121,15 @@ class Workbench(ipywidgets.VBox):
             self.page = made
         _say(self.status, markup.status(status_sentence(index, choice)))
         self.controls.show(index, choice)
-        self._shown = (choice, self.store.revision)
+        self._shown = _Shown(choice, self.store.revision, index)
 
     def _say_failed(self, wanted: Choice) -> None:
         self.failure.value = markup.log(traceback.format_exc())
         reason = "The choice could not be shown; the last good picture stays. The details are below the table."
         _say(self.status, markup.status(reason, trouble=True))
-        if self._shown is not None and wanted != self._shown[0]:
-            self.selection.choose(**asdict(self._shown[0]))
+        if self._shown is not None and wanted != self._shown.choice:
+            self.selection.choose(**asdict(self._shown.choice))
+            self.controls.show(self._shown.index, self._shown.choice)
 
     @property
     def slice(self) -> xr.Dataset:
@@ -140,7 +151,9 @@ class Workbench(ipywidgets.VBox):
 
     def close(self) -> None:
         """Close every model of the workbench, in the kernel and in the browser."""
-        self.selection.unobserve_all()
+        if self._following:  # not so where the making of the workbench failed, nor the second time
+            self.selection.unobserve(self._changed)
+            self._following = False
         close_tree(self)
 
     def __repr__(self) -> str:
