@@ -128,7 +128,7 @@ def _ramp(record: Record) -> _Ramp:
     current = current * sense
     largest = float(current.max())
     # Only where the field stands still does nothing but drift move the flux.
-    still = max(_RESTING * largest, _NOISE * float(np.std(start)), 2 * record.field_step)
+    still = max(_RESTING * largest, _NOISE * float(np.std(np.diff(start))) / 2**0.5, 2 * record.field_step)
     begin = _first_run(current > still)
     if begin < _FEWEST_RESTING:
         raise CaptureError(
