@@ -9,6 +9,7 @@ The map, in the order in which data flow; a folder imports only from those above
 - ``loop``        H and B on phase: circuit undone, ring applied, polarity
 - ``quantities``  numbers with uncertainty, marks, the reduction of one run
 - ``store``       runs, curves and cube on disk; a campaign reduced into it
+- ``theory``      why: laws that the runs of a store are held against
 - ``views``       what one sees: selection, derived arrays, figures, widgets
 - ``write``       what leaves the bench: hand-off folder, tables, notebooks
 - ``cli``         the command line

@@ -109,7 +109,7 @@ def test_set_aside_and_take_back(workbench: Run, store: Path, campaign: Path) ->
 
 def test_handoff_and_verify(workbench: Run, store: Path, campaign: Path) -> None:
     found = workbench("handoff", store, "--to", "out", "--frequency", "0.05 kHz")
-    assert found.returncode == 0, found.stderr
+    assert (found.returncode, found.stderr) == (0, "")
     out = campaign.parent / "out"
     assert {each.name for each in out.iterdir()} == {
         "SHA256SUMS", "campaign.toml", "hand-off.ipynb", "runs.nc", "versions.txt",

@@ -107,6 +107,15 @@ def test_a_figure_that_does_not_follow_from_its_loop_is_found(folder: Path, tmp_
         exec(source, scope)
 
 
+@pytest.mark.parametrize("kind", ["air", "initial"])
+def test_runs_without_a_closed_loop_are_handed_over_too(store: Any, tmp_path: Path, kind: str) -> None:
+    store.runs["kind"] = ("run", [kind] * store.runs.sizes["run"])
+    for name in ("field_tip", "induction_tip", "loss_per_cycle"):
+        store.runs[name][:] = np.nan
+    folder = hand_off(store, tmp_path / "out")
+    assert set(xr.load_dataset(folder / "runs.nc").kind.values) == {kind}
+
+
 def test_an_empty_folder_may_be_there_and_parents_are_made(unexecuted: None, store: Any, tmp_path: Path) -> None:
     (tmp_path / "a").mkdir()
     hand_off(store, tmp_path / "a", specimen="R1")

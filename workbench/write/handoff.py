@@ -100,7 +100,7 @@ def _fill(build: Path, store: Store, choice: Choice, runs: Any) -> None:
     book = handoff_notebook()
     NotebookClient(
         book, timeout=_CELL_SECONDS, kernel_name="python3", resources={"metadata": {"path": str(build)}},
-        record_timing=False,
+        record_timing=False, extra_arguments=["--log-level=ERROR"],
     ).execute()  # fmt: skip
     with (build / "hand-off.ipynb").open("w", encoding="utf-8", newline="\n") as file:
         nbformat.write(book, file)

@@ -50,9 +50,10 @@ table = pd.DataFrame({
     "specimen": runs.specimen.values, "f / Hz": runs.frequency.values, "T / degC": runs.temperature.values,
     **{f"{name} / {runs[name].attrs['units']}": with_u(name) for name in figures},
 })
-top = pd.Series(runs.field_tip.values).groupby([table["specimen"], table["f / Hz"], table["T / degC"]]).idxmax()
+tips = pd.Series(runs.field_tip.values).dropna()
+top = tips.groupby([table[name].loc[tips.index] for name in ("specimen", "f / Hz", "T / degC")]).idxmax()
 print("The highest step of each ladder, the first 40 of them:")
-print(table.loc[sorted(top.dropna().astype(int))].head(40).to_string(index=False))"""
+print(table.loc[sorted(top)].head(40).to_string(index=False))"""
 
 _DOUBTS = """\
 masks, words = runs.marks.attrs["flag_masks"], runs.marks.attrs["flag_meanings"].split()
