@@ -123,7 +123,7 @@ def test_eddy_shielded() -> None:
 )
 def test_thick_ring(inner: float, frequency: float, wanted: tuple[str, ...]) -> None:
     """D/d > 1.1 quasi-static (IEC 60404-4), > 1.4 else (IEC 60404-6, from memory)."""
-    ring = dataclasses.replace(RING, inner_diameter=Measured(inner))
+    ring = dataclasses.replace(RING, inner_diameter=Measured(inner), mass=None)
     _, field, induction = wave()
     captured = record(field, induction, RATE * frequency / 50)
     assert marks(captured, dataclasses.replace(LINE, frequency=frequency), ring) == wanted
@@ -163,6 +163,43 @@ def test_coarse() -> None:
 def test_many_crossings() -> None:
     angle, field, induction = wave()
     assert "many crossings" in marks(record(field + 0.15 * np.sin(5 * angle), induction))
+
+
+def test_mass_and_size_disagree() -> None:
+    """A = 2 m/(rho pi (D + d)) is 5 % below h (D - d)/2: a stack of 95 % filling."""
+    _, field, induction = wave()
+    light = dataclasses.replace(RING, mass=Measured(0.95 * 34.60778e-3))
+    assert marks(record(field, induction), specimen=light) == ("mass and size disagree",)
+
+
+def test_not_demagnetised() -> None:
+    """The asymmetry that else is `biased`, where the run list says that it was demagnetised."""
+    angle, field, induction = wave()
+    line = dataclasses.replace(LINE, demagnetised="yes")
+    assert marks(record(field + 0.003 * np.sin(2 * angle + 1.0), induction), line) == ("not demagnetised",)
+    assert marks(record(field, induction), line) == ()
+
+
+@pytest.mark.parametrize(
+    ("frequency", "material", "wanted"),
+    [(99e3, "", False), (101e3, "", True), (50, "electrical steel", True), (50, "ferrite", True), (50, "other", False)],
+)
+def test_outside_the_standard(frequency: float, material: str, wanted: bool) -> None:
+    """IEC 60404-6:2018, scope: 20 Hz to 100 kHz, neither electrical steel nor soft ferrite."""
+    _, field, induction = wave()
+    captured = record(field, induction, RATE * frequency / 50)
+    ring = dataclasses.replace(RING, material_class=material)
+    found = marks(captured, dataclasses.replace(LINE, frequency=frequency), ring)
+    assert found == (("outside the standard",) if wanted else ())
+
+
+@pytest.mark.parametrize(("relative", "wanted"), [(1e-3, True), (4e-3, False), (0.0, False)])
+def test_claims_too_much(relative: float, wanted: bool) -> None:
+    """Intercomparisons agree within 1 %; a sheet that states no uncertainty claims nothing."""
+    _, field, induction = wave()
+    shunt = Channel("shunt", {"resistance": Measured(1.0, relative)})
+    found = marks(record(field, induction), circuit=Circuit("main", shunt, BENCH.induction))
+    assert found == (("claims too much",) if wanted else ())
 
 
 def test_a_limit_of_the_sheet_counts() -> None:

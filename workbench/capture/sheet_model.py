@@ -249,6 +249,10 @@ class LimitsTable(_Table):
     coarse: Limit | None = None
     repeat_differs: Limit | None = None
     many_crossings: Limit | None = None
+    warmed_up: Limit | None = None
+    mass_and_size_disagree: Limit | None = None
+    not_demagnetised: Limit | None = None
+    claims_too_much: Limit | None = None
 
 
 def _format(value: Any) -> int:

@@ -6,7 +6,6 @@ import math
 
 import numpy as np
 
-from workbench.base.constants import MU0
 from workbench.base.vocabulary import QUANTITIES
 from workbench.capture.campaign import RunLine
 from workbench.loop.assemble import Loop, waves
@@ -17,12 +16,8 @@ from workbench.quantities.shape import coercive_fields, count_crossings
 _SINE_FORM_FACTOR = math.pi / (2 * math.sqrt(2))
 _DISTORTION_LIMIT = 0.05
 """Of the secondary's voltage: a form factor alone is blind to a third harmonic in quadrature."""
-QUASI_STATIC_BELOW = 20.0
-"""Hz.  IEC 60404-6 covers 20 Hz to 100 kHz; below, IEC 60404-4."""
 _CHANCE = 4.0
 """Standard uncertainties that noise alone may explain."""
-_AC_RING = 1.4
-_AC_RING_REMARK = 1.25
 
 Limits = dict[str, float]
 Seen = dict[str, str]
@@ -33,9 +28,8 @@ def loop_marks(loop: Loop, figures: Figures, line: RunLine, limit: Limits) -> Se
     return {
         **_steadiness(loop, figures, limit),
         **_waveform(figures, limit),
-        **_symmetry(loop, figures, limit),
+        **_symmetry(loop, figures, line, limit),
         **_loss(loop, figures, limit),
-        **_specimen(loop, figures, limit, line),
         **_setting(figures, line, limit),
     }
 
@@ -89,15 +83,16 @@ def _waveform(figures: Figures, limit: Limits) -> Seen:
     return {}
 
 
-def _symmetry(loop: Loop, figures: Figures, limit: Limits) -> Seen:
+def _symmetry(loop: Loop, figures: Figures, line: RunLine, limit: Limits) -> Seen:
     seen: Seen = {}
     field, induction = waves(above_noise(loop.harmonics, loop.kept), DENSE, loop.single)
     rising, falling = (float(side[0]) for side in coercive_fields(field, induction))
     mean = abs(rising + falling) / 2
     # The difference of the two is twice as noisy as half their sum, the coercivity.
     by_chance = _CHANCE * 2 * figures.budget["coercivity"]["scatter"]
-    if abs(rising - falling) > limit["biased"] * mean + by_chance:
-        seen["biased"] = f"Hc is {rising:.4g} A/m rising and {falling:.4g} A/m falling"
+    name = "not demagnetised" if line.demagnetised == "yes" else "biased"
+    if abs(rising - falling) > limit[name] * mean + by_chance:
+        seen[name] = f"Hc is {rising:.4g} A/m rising and {falling:.4g} A/m falling"
     for name, wave in (("H", field), ("B", induction)):
         count = int(count_crossings(wave)[0])
         if count > limit["many crossings"]:
@@ -114,37 +109,6 @@ def _loss(loop: Loop, figures: Figures, limit: Limits) -> Seen:
     delay = math.hypot(shares.get("field_delay", 0.0), shares.get("induction_delay", 0.0))
     if delay > limit["delay dominates"] * abs(loss):
         seen["delay dominates"] = f"u(W) from the delay is {delay / abs(loss):.1%} of W"
-    return seen
-
-
-def skin_depth(resistivity: float, frequency: float, permeability: float) -> float:
-    """Skin depth sqrt(2 rho/(omega mu)), m.  Ohm metre, Hz, relative permeability.
-
-    Examples
-    --------
-    >>> round(skin_depth(0.48e-6, 50.0, 5000.0) * 1e3, 6)
-    0.697382
-    """
-    return math.sqrt(resistivity / (math.pi * frequency * MU0 * permeability))
-
-
-def _specimen(loop: Loop, figures: Figures, limit: Limits, line: RunLine) -> Seen:
-    seen: Seen = {}
-    specimen = loop.setup.specimen
-    permeability = figures.values["amplitude_permeability"]
-    if specimen.thickness and specimen.resistivity and permeability > 0:
-        depth = skin_depth(specimen.resistivity.value, figures.values["measured_frequency"], permeability)
-        ratio = specimen.thickness.value / depth
-        if ratio > limit["eddy shielded"]:
-            seen["eddy shielded"] = f"thickness is {ratio:.2f} of the skin depth {depth * 1e3:.3g} mm"
-    ring = specimen.diameter_ratio
-    quasi_static = line.kind == "initial" or line.frequency < QUASI_STATIC_BELOW
-    thick = limit["thick ring"] if quasi_static else max(limit["thick ring"], _AC_RING)
-    if ring > thick:
-        clause = "IEC 60404-4" if quasi_static else "IEC 60404-6, from memory"
-        seen["thick ring"] = f"D/d = {ring:.3f}, at most {thick:g} ({clause})"
-    elif not quasi_static and ring > _AC_RING_REMARK:
-        seen["remark"] = f"D/d = {ring:.3f}: at most 1.25 is preferred (IEC 60404-6, from memory)"
     return seen
 
 

@@ -67,7 +67,21 @@ _ROWS = (
     Mark("repeat differs", "run", "doubt", 3.0, "1", "this repeat lies outside the scatter of its fellows",
          "look at its capture, and repeat once more", _PRACTICE),
     Mark("many crossings", "run", "doubt", 2, "crossings", "B = 0 or H = 0 is crossed more than twice a cycle",
-         "look for noise or for minor loops; coercivity and remanence are of the outermost crossings", _PRACTICE),
+         "look for noise or for minor loops; coercivity and remanence are the signed sum of all crossings", _PRACTICE),
+    Mark("warmed up", "run", "doubt", 1.0, "K", "the specimen may be warmer than its setting says",
+         "let it cool, take high inductions last, and put a thermocouple on the ring",
+         "adiabatic rise = specific loss times time over heat capacity; 1 K: common practice, no source"),
+    Mark("mass and size disagree", "specimen", "doubt", 0.02, "1", "the sections from mass and from dimensions differ",
+         "weigh and measure again; a laminated stack wants its mass, since air between the sheets is no section",
+         "common practice (2 %), no source"),
+    Mark("not demagnetised", "run", "doubt", 0.02, "1", "the loop is asymmetric although the run list says demagnetised",
+         "demagnetise again, from well above the knee, in small steps down to zero", _PRACTICE),
+    Mark("outside the standard", "run", "note", _NAN, "", "the ring methods of IEC 60404-4 and IEC 60404-6 do not cover this",
+         "cite the standard that does, or say that none was followed",
+         "scopes of IEC 60404-6:2018 (20 Hz to 100 kHz, neither electrical steel nor ferrite) and IEC 60404-4 (to 10 kA/m)"),
+    Mark("claims too much", "circuit", "note", 0.005, "1", "the stated U of the specific loss is below what laboratories reach",
+         "look whether the sheet's uncertainties are those of a calibration, and whether some are missing",
+         "European single-sheet intercomparison MTR094: laboratories agree within 1 %; doi of AIP Adv. 12, 105208 (2022): 2.5 %"),
 )  # fmt: skip
 
 MARKS: dict[str, Mark] = {row.name: row for row in _ROWS}

@@ -20,6 +20,7 @@ from workbench.quantities.loop_marks import loop_marks
 from workbench.quantities.mark_table import MARKS
 from workbench.quantities.record_marks import record_marks
 from workbench.quantities.result import PHASE_POINTS, RunResult
+from workbench.quantities.specimen_marks import specimen_marks
 
 HIGHEST_FIELD = 1e8
 """A/m: beyond any magnet ever built."""
@@ -56,7 +57,11 @@ def reduce_record(
     found = figures(loop, (record.field_step, record.induction_step))
     _insist_on_physics(found)
     limit = {name: limits.get(mark.key, mark.limit) for name, mark in MARKS.items()}
-    seen = {**record_marks(record, loop.waveform, limit), **loop_marks(loop, found, line, limit)}
+    seen = {
+        **record_marks(record, loop.waveform, limit),
+        **loop_marks(loop, found, line, limit),
+        **specimen_marks(loop, found, line, limit),
+    }
     if loop.harmonics.swapped:
         seen["lead swapped"] = "the in-phase permeability was negative; the induction channel was turned round"
     return _result(loop, found, seen, limit)
