@@ -8,13 +8,14 @@ from closed_form_store import HOSTILE, PEAKS, closed_form_store
 
 from workbench.base.uncertainty import NORMAL_95
 from workbench.views.derived.index import run_index
-from workbench.views.derived.loops import DISPLAY_POINTS, MOST_LOOPS, loop_family, thinned
+from workbench.views.derived.loops import MOST_LOOPS, loop_family
 from workbench.views.derived.lossmap import loss_map
 from workbench.views.derived.overview import overview
 from workbench.views.derived.page import page
 from workbench.views.derived.permeability import permeability_curves
 from workbench.views.derived.readout import readout, slice_in_view, status_sentence
 from workbench.views.derived.settle import start
+from workbench.views.derived.thinning import DISPLAY_POINTS, thinned
 from workbench.views.derived.ticks import linear_axis, log_axis, symmetric_axis
 
 PHASE = 2 * np.pi * np.arange(512) / 512

@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Hashable, Sequence
+from collections.abc import Callable, Hashable, Sequence
 from dataclasses import dataclass
 from functools import cached_property
-from typing import Any, Protocol
+from typing import Any, Protocol, TypeVar
 from weakref import WeakKeyDictionary
 
 import numpy as np
@@ -19,6 +19,9 @@ from workbench.quantities.mark_table import MARKS, mark_bits, marks_of
 Floats = npt.NDArray[np.float64]
 Rows = npt.NDArray[np.int32]
 Axis = tuple[float | None, ...]
+Made = TypeVar("Made")
+MOST_REMEMBERED = 4096
+"""Thinned loops and the like, some 1.3 kB each."""
 
 _DOUBT = mark_bits(tuple(name for name, mark in MARKS.items() if mark.weight == "doubt" and mark.reach == "run"))
 
@@ -100,6 +103,18 @@ class RunIndex:
     def induction(self) -> npt.NDArray[Any]:
         """(run, phase) T"""
         return np.asarray(self.runs["induction"].values)
+
+    def remembered(self, key: Hashable, make: Callable[[], Made]) -> Made:
+        """What `make` gives, made once for each key while the store stays as it is."""
+        if key not in self._memory:
+            if len(self._memory) >= MOST_REMEMBERED:
+                self._memory.clear()
+            self._memory[key] = make()
+        return self._memory[key]
+
+    @cached_property
+    def _memory(self) -> dict[Hashable, Any]:
+        return {}
 
     def text_at(self, name: str, row: int) -> str:
         """A coordinate of one run as text; empty where the store does not have it."""

@@ -14,14 +14,13 @@ from workbench.base.uncertainty import with_uncertainty
 from workbench.base.vocabulary import QUANTITIES
 from workbench.views.colours import Look, alloy_looks, strengths
 from workbench.views.derived.index import RunIndex, spelled
+from workbench.views.derived.thinning import Drawn, thinned
 from workbench.views.derived.ticks import AxisPlan, finite_range, round_up, symmetric_axis
 from workbench.views.selection import Choice
 
-DISPLAY_POINTS = 160
 MOST_LOOPS = 48
 OPENINGS = 4.0
 """Largest coercivities of the family that `opening` shows on each side."""
-Drawn = npt.NDArray[np.float32]
 
 
 @dataclass(frozen=True, eq=False)
@@ -78,46 +77,6 @@ class LoopFamily:
     summary: str
 
 
-def thinned(field: npt.ArrayLike, induction: npt.ArrayLike, count: int = DISPLAY_POINTS) -> tuple[Drawn, Drawn]:
-    """A closed loop of at most ``count`` points, evenly spaced along the drawn line.
-
-    Parameters
-    ----------
-    field, induction : array, dims (phase)    one cycle, not closed
-
-    Returns
-    -------
-    two arrays, dims (count,)    samples of the loop: the extremes and the samples on both sides of
-                                 each zero crossing among them; the first is repeated at the end
-
-    Examples
-    --------
-    >>> phase = np.arange(512) * 2 * np.pi / 512
-    >>> h, b = thinned(100 * np.cos(phase), np.sin(phase))
-    >>> len(h), float(h.max()), bool(h[0] == h[-1])
-    (160, 100.0, True)
-    """
-    h, b = np.asarray(field, float), np.asarray(induction, float)
-    if len(h) < count:
-        places = np.arange(len(h))
-    else:
-        must = np.concatenate([[h.argmax(), h.argmin(), b.argmax(), b.argmin()], _crossings(h), _crossings(b)])
-        must = np.unique(must)[: count // 2]
-        steps = np.hypot(np.diff(h) / (np.ptp(h) or 1.0), np.diff(b) / (np.ptp(b) or 1.0))
-        run = np.concatenate([[0.0], np.cumsum(steps)])
-        even = np.searchsorted(run, np.linspace(0.0, run[-1], count - 1 - len(must), endpoint=False))
-        places = np.unique(np.concatenate([must, np.minimum(even, len(h) - 1)]))
-    places = np.append(places, places[0])
-    # Equal lengths, so that a family is one array: the closing point is repeated.
-    places = np.pad(places, (0, max(0, count - len(places))), mode="edge")
-    return h[places].astype(np.float32), b[places].astype(np.float32)
-
-
-def _crossings(values: npt.NDArray[np.float64]) -> npt.NDArray[np.intp]:
-    before = np.flatnonzero(np.signbit(values) != np.signbit(np.roll(values, -1)))
-    return np.concatenate([before, (before + 1) % len(values)])
-
-
 def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
     """The family of loops along the chosen axis, with the loop of the held setting on top."""
     looks = alloy_looks(index.alloy_names)
@@ -128,7 +87,7 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
     largest_field, largest_induction = _frame(index, choice, [row for _, row in members])
     kept, left_out = _at_most(members, choice)
     drawn = kept if choice.along != "specimen" else []
-    shapes = [thinned(index.field[row] / factor, index.induction[row]) for _, row in drawn]
+    shapes = [_thinned(index, row) for _, row in drawn]
     rows = np.array([row for _, row in kept], dtype=int)
     names = tuple(_name(each, choice.along, index) for each, _ in kept)
     front = looks[index.alloy_of(choice.front)]
@@ -143,7 +102,7 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
         induction_axis=symmetric_axis(largest_induction),
         field_label=f"H / {unit}",
         look=front,
-        field=np.array([h for h, _ in shapes], np.float32),
+        field=np.array([h for h, _ in shapes], np.float32) / np.float32(factor),
         induction=np.array([b for _, b in shapes], np.float32),
         strength=strengths(len(shapes)),
         tip_field=(index.values("field_tip")[rows] / factor).astype(np.float32),
@@ -216,8 +175,12 @@ def _curve(index: RunIndex, choice: Choice, specimen: str, factor: float, looks:
     row = index.row(specimen, choice.peak, choice.frequency, choice.temperature)
     if row < 0:
         return None
-    field, induction = thinned(index.field[row] / factor, index.induction[row])
-    return Curve(specimen, row, field, induction, looks[index.alloy_of(specimen)])
+    field, induction = _thinned(index, row)
+    return Curve(specimen, row, field / np.float32(factor), induction, looks[index.alloy_of(specimen)])
+
+
+def _thinned(index: RunIndex, row: int) -> tuple[Drawn, Drawn]:
+    return index.remembered(("thinned", row), lambda: thinned(index.field[row], index.induction[row]))
 
 
 def _click(step: Choice, along: str) -> dict[str, Any]:

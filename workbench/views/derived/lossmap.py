@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Hashable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import chain, pairwise
 from typing import Any
 
@@ -67,6 +67,10 @@ class LossMap:
     summary: str
 
 
+_Box = tuple[float, float, float, float]
+"""Left, right, bottom, top."""
+
+
 @dataclass(frozen=True)
 class _Place:
     """One setting of the map: its run, the induction it is drawn at, and why it may be a hole."""
@@ -80,6 +84,18 @@ class _Place:
 
 def loss_map(index: RunIndex, choice: Choice) -> LossMap:
     """The quantity of the specimen in front at the held temperature, over frequency and induction reached."""
+    key = (index.token, "map", choice.front, choice.temperature, choice.quantity)
+    still, boxes = index.remembered(key, lambda: _still_map(index, choice, key))
+    at = boxes.get((choice.peak, choice.frequency))
+    return replace(
+        still,
+        chosen_key=(index.token, choice.front, choice.peak, choice.frequency, choice.temperature),
+        outline=_corners(at) if at else None,
+    )
+
+
+def _still_map(index: RunIndex, choice: Choice, key: Hashable) -> tuple[LossMap, dict[Any, _Box]]:
+    """The map without an outline, and the box of each setting."""
     columns = _columns(index, choice)
     every = [place for column in columns for place in column]
     log_y = _reads_better_in_log(columns)
@@ -90,16 +106,15 @@ def loss_map(index: RunIndex, choice: Choice) -> LossMap:
     bad = [(place, box) for place, box in flat if place.hole]
     values = index.values(choice.quantity)[[place.row for place, _ in good]]
     strip = _strip(index, choice)
-    at = [box for place, box in flat if (place.peak, place.frequency) == (choice.peak, choice.frequency)]
     word = QUANTITIES[choice.quantity]
     doubtful = np.flatnonzero(index.doubtful[[place.row for place, _ in good]])
     y_axis = _induction_axis([box for _, box in flat], log_y)
     tiles, holes = _tiles(good), _tiles(bad)
     x, y = tiles.middles(y_axis)
     texts = tuple(place.hole for place, _ in bad)
-    return LossMap(
-        key=(index.token, "map", choice.front, choice.temperature, choice.quantity),
-        chosen_key=(index.token, choice.front, choice.peak, choice.frequency, choice.temperature),
+    still = LossMap(
+        key=key,
+        chosen_key=None,
         title=f"{choice.front} · {spelled(choice.temperature, '°C')}",
         x_axis=_frequency_axis([column[0].frequency for column in columns], edges),
         y_axis=y_axis,
@@ -116,9 +131,10 @@ def loss_map(index: RunIndex, choice: Choice) -> LossMap:
         hole_texts=texts,
         hole_words=_words(texts, holes, y_axis, len(columns)),
         hole_places=holes.middles(y_axis),
-        outline=_corners(at[0]) if at else None,
+        outline=None,
         summary=_summary(choice, good, values, bad),
     )
+    return still, {(place.peak, place.frequency): box for place, box in flat}
 
 
 def _columns(index: RunIndex, choice: Choice) -> list[list[_Place]]:
@@ -184,7 +200,7 @@ def _frequency_edges(frequencies: list[float]) -> list[tuple[float, float]]:
     return list(pairwise(ends))
 
 
-def _boxes(column: list[_Place], edge: tuple[float, float], log_y: bool) -> list[tuple[float, float, float, float]]:
+def _boxes(column: list[_Place], edge: tuple[float, float], log_y: bool) -> list[_Box]:
     """(left, right, bottom, top) of each setting of a column: halfway to its neighbours."""
     at = np.array([place.induction for place in column])
     scaled = np.log(at) if log_y else at
@@ -198,12 +214,12 @@ def _boxes(column: list[_Place], edge: tuple[float, float], log_y: bool) -> list
     return [(edge[0], edge[1], float(low), float(high)) for low, high in pairwise(ends)]
 
 
-def _corners(box: tuple[float, float, float, float]) -> tuple[Floats, Floats]:
+def _corners(box: _Box) -> tuple[Floats, Floats]:
     left, right, low, high = box
     return np.array([left, right, right, left]), np.array([low, low, high, high])
 
 
-def _tiles(places: list[tuple[_Place, tuple[float, float, float, float]]]) -> Tiles:
+def _tiles(places: list[tuple[_Place, _Box]]) -> Tiles:
     corners = [_corners(box) for _, box in places]
     return Tiles(
         x=np.array([x for x, _ in corners]).reshape(-1, 4),
@@ -225,7 +241,7 @@ def _frequency_axis(frequencies: list[float], edges: list[tuple[float, float]]) 
     return named_axis(edges[0][0], edges[-1][1], frequencies) if edges else log_axis(math.nan, math.nan)
 
 
-def _induction_axis(boxes: list[tuple[float, float, float, float]], log_y: bool) -> AxisPlan:
+def _induction_axis(boxes: list[_Box], log_y: bool) -> AxisPlan:
     low = min((box[2] for box in boxes), default=math.nan)
     high = max((box[3] for box in boxes), default=math.nan)
     return log_axis(low, high) if log_y else linear_axis(low, high)

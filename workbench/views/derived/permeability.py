@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Hashable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -56,20 +56,32 @@ class PermeabilityCurves:
 
 def permeability_curves(index: RunIndex, choice: Choice) -> PermeabilityCurves:
     """Amplitude permeability against the tip of the field, log-log, with the held setting marked."""
+    key = (index.token, "permeability", choice.specimens, choice.front, choice.frequency, choice.temperature)
+    still = index.remembered(key, lambda: _still_curves(index, choice, key))
+    row = index.row(choice.front, choice.peak, choice.frequency, choice.temperature)
+    return replace(still, chosen_key=(index.token, choice.front, row), chosen=_chosen(index, row))
+
+
+def _x_name(index: RunIndex) -> str:
+    return "induction_tip" if index.peak_name == "peak_induction" else "field_tip"
+
+
+def _chosen(index: RunIndex, row: int) -> tuple[float, float] | None:
+    x, y = (float(index.values(name)[row]) for name in (_x_name(index), "amplitude_permeability"))
+    return (x, y) if row >= 0 and 0 < x < math.inf and 0 < y < math.inf else None
+
+
+def _still_curves(index: RunIndex, choice: Choice, key: Hashable) -> PermeabilityCurves:
+    """Everything but the chosen setting."""
     looks = alloy_looks(index.alloy_names)
-    x_name = "induction_tip" if index.peak_name == "peak_induction" else "field_tip"
+    x_name = _x_name(index)
     x_all, y_all = index.values(x_name), index.values("amplitude_permeability")
     curves = tuple(_curve(index, choice, name, x_all, y_all, looks) for name in choice.specimens)
     dropped = sum(int(_missing(index, choice, name, x_all, y_all)) for name in choice.specimens)
-    row = index.row(choice.front, choice.peak, choice.frequency, choice.temperature)
-    chosen = (float(x_all[row]), float(y_all[row])) if row >= 0 else None
-    if chosen is not None and not all(0 < value < math.inf for value in chosen):
-        chosen = None
     front = [curve for curve in curves if curve.specimen == choice.front]
-    held = (choice.specimens, choice.front, choice.frequency, choice.temperature)
     return PermeabilityCurves(
-        key=(index.token, "permeability", held),
-        chosen_key=(index.token, choice.front, row),
+        key=key,
+        chosen_key=None,
         title=f"{len(curves)} specimen{'s' if len(curves) != 1 else ''} · "
         f"{spelled(choice.frequency, 'Hz')}, {spelled(choice.temperature, '°C')}",
         x_axis=_axis(index, choice, x_all),
@@ -80,7 +92,7 @@ def permeability_curves(index: RunIndex, choice: Choice) -> PermeabilityCurves:
         curves=curves,
         band_note=_band_note(index, front),
         band=_band(index, front),
-        chosen=chosen,
+        chosen=None,
         summary=_summary(index, front, dropped),
     )
 

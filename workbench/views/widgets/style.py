@@ -55,12 +55,16 @@ body[data-jp-theme-light="false"] :is(.wb-swatch, .wb-ramp > i) { filter: bright
 .wb-scroll { overflow-x: auto; margin-top: 4px; }
 .wb-table { border-collapse: collapse; font-size: 12px; font-variant-numeric: tabular-nums; margin: 0; }
 .wb-table caption { text-align: left; font-weight: 600; padding: 2px 0 4px; caption-side: top; }
-.wb-table th, .wb-table td { padding: 1px 8px; border-bottom: 1px solid var(--jp-border-color2); vertical-align: top; }
+.wb-table th, .wb-table td { padding: 1px 6px; border-bottom: 1px solid var(--jp-border-color2); vertical-align: top; }
 .wb-table thead th { text-align: left; border-bottom: 1px solid var(--jp-border-color0); }
 .wb-table thead th > span, .wb-table tbody th > span { font-weight: 400; opacity: 0.8; }
 .wb-table tbody th { text-align: left; font-weight: 400; white-space: nowrap; }
 .wb-table .wb-value { text-align: right; padding-right: 3px; white-space: nowrap; }
 .wb-table .wb-spread { text-align: left; padding-left: 0; white-space: nowrap; opacity: 0.85; }
 .wb-table .wb-words td { max-width: 230px; overflow-wrap: anywhere; }
+.wb-table code { font-size: 11px; }
+@container (min-width: 900px) {
+  .wb-controls .wb-rest > :nth-child(3n+1) .widget-label { width: 54px; flex-basis: 54px; }
+}
 @container (max-width: 760px) { .wb-panes > .wb-pane { flex-basis: 100%; } }
 </style>"""

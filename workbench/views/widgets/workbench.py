@@ -36,7 +36,7 @@ class _Shown(NamedTuple):
 
     choice: Choice
     revision: int
-    index: RunIndex
+    runs: RunIndex
 
 
 class Workbench(ipywidgets.VBox):
@@ -129,7 +129,7 @@ class Workbench(ipywidgets.VBox):
         _say(self.status, markup.status(reason, trouble=True))
         if self._shown is not None and wanted != self._shown.choice:
             self.selection.choose(**asdict(self._shown.choice))
-            self.controls.show(self._shown.index, self._shown.choice)
+            self.controls.show(self._shown.runs, self._shown.choice)
 
     @property
     def slice(self) -> xr.Dataset:
