@@ -16,17 +16,15 @@ from workbench.views.derived.page import page
 from workbench.views.derived.settle import start
 from workbench.views.figures import fallback
 
-_ABOUT = """\
-# The workbench on this campaign
-
-Click the cell below and press Shift+Enter: it opens the store and shows the workbench. Until then there is a still
-picture, of the day this notebook was written. `store.runs` and `store.cube()` are xarray Datasets of the same figures,
-`store.failures` lists the captures that could not be used. This notebook is yours: it is never overwritten."""
+_BEFORE = "Click the next cell and press **Shift+Enter** for the workbench; until then it shows a still picture."
 _OPEN = """\
 import workbench
 
 store = workbench.open_store({name!r})
 workbench.Workbench(store)"""
+_AFTER = """\
+`store.runs` and `store.cube()` are xarray Datasets of the same figures, `store.failures` lists the captures that could
+not be used, `store.history` what was set aside and why. This notebook is yours: it is never overwritten."""
 KERNEL = {
     "kernelspec": {"name": "python3", "display_name": "Python 3 (ipykernel)", "language": "python"},
     "language_info": {"name": "python"},
@@ -58,8 +56,10 @@ def opening_notebook(store: Store, path: str | os.PathLike[str]) -> Path:
     name = os.path.relpath(Path(store.path).resolve(), where.resolve().parent)
     if where.exists():
         return where
-    book = notebook_of(("markdown", _ABOUT), ("code", _OPEN.format(name=Path(name).as_posix())))
-    book.cells[-1].outputs = _still_picture(store)
+    opening = _OPEN.format(name=Path(name).as_posix())
+    # Only one line stands before the cell: the workbench is to fit the first screen.
+    book = notebook_of(("markdown", _BEFORE), ("code", opening), ("markdown", _AFTER))
+    book.cells[1].outputs = _still_picture(store)
     try:
         # "x", although there was none a moment ago: two starts at once must not overwrite each other's.
         with where.open("x", encoding="utf-8") as file:
