@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
-from scipy import linalg, optimize, stats
+from scipy import linalg, optimize, special
 
 Floats = npt.NDArray[np.float64]
 
@@ -42,9 +42,14 @@ class Fit:
         return np.sqrt(np.diag(self.covariance))
 
     @property
+    def chance(self) -> float:
+        """Probability of a chi squared at least this large if the law is true."""
+        return float(special.chdtrc(self.dof, self.chi_square)) if self.dof else 1.0
+
+    @property
     def holds(self) -> bool:
         """Whether chi squared is below the 95 % point for its degrees of freedom."""
-        return bool(self.chi_square <= stats.chi2.ppf(LEVEL, self.dof)) if self.dof else True
+        return self.chance >= 1 - LEVEL
 
     def scaled(self) -> Fit:
         """The same with the points' uncertainty taken from the residuals: covariance times chi^2/dof."""
@@ -84,16 +89,25 @@ def least_squares(
         lambda p: weight * (model(p) - y), np.asarray(start, float), lambda p: weight[:, None] * jacobian(p),
         method="lm", x_scale="jac", ftol=_TIGHT, xtol=_TIGHT, gtol=_TIGHT, max_nfev=20_000,
     )  # fmt: skip
-    q, r = linalg.qr(weight[:, None] * jacobian(found.x), mode="economic")
-    inverse = linalg.solve_triangular(r, np.eye(len(r)))
-    moves = np.zeros((0, len(y))) if shared is None else np.asarray(shared, float)
-    shares = (moves * weight) @ q @ inverse.T
-    return Fit(found.x, inverse @ inverse.T, shares, float(2 * found.cost), len(y) - len(r))
+    return _solved(found.x, jacobian(found.x), y - model(found.x), weight, shared)
 
 
 def linear_fit(design: Floats, y: Floats, u: npt.ArrayLike = 1.0, shared: npt.ArrayLike | None = None) -> Fit:
-    """`least_squares` of a law that is linear in its parameters; design (n, p)."""
-    return least_squares(lambda p: design @ p, lambda p: design, np.zeros(design.shape[1]), y, u, shared)
+    """As `least_squares`, for a law that is linear in its parameters: no iteration; design (n, p)."""
+    weight = 1 / np.broadcast_to(np.asarray(u, float), y.shape)
+    return _solved(np.zeros(design.shape[1]), design, y, weight, shared)
+
+
+def _solved(start: Floats, jacobian: Floats, residual: Floats, weight: Floats, shared: npt.ArrayLike | None) -> Fit:
+    """One Gauss-Newton step from `start`, and what is known of the parameters there."""
+    scale = np.linalg.norm(weight[:, None] * jacobian, axis=0)
+    q, r = linalg.qr(weight[:, None] * jacobian / scale, mode="economic")
+    inverse = linalg.solve_triangular(r, np.eye(len(r))) / scale[:, None]
+    step = inverse @ (q.T @ (weight * residual))
+    moves = np.zeros((0, len(weight))) if shared is None else np.asarray(shared, float)
+    chi_square = float(np.sum((weight * (residual - jacobian @ step)) ** 2))
+    shares = (moves * weight) @ q @ inverse.T
+    return Fit(start + step, inverse @ inverse.T, shares, chi_square, len(weight) - len(r))
 
 
 @dataclass(frozen=True, eq=False)
