@@ -95,7 +95,8 @@ def _frame(axes: Axes, x: AxisPlan, y: AxisPlan, labels: tuple[str, str], title:
         axis.set_minor_locator(NullLocator())
     axes.set_xlabel(labels[0], labelpad=2)
     axes.set_ylabel(labels[1], labelpad=2)
-    axes.set_title(title, fontsize=9, loc="left", parse_math=False)
+    # A fixed height, or the title of the map would make way for its colour strip.
+    axes.set_title(title, fontsize=9, loc="left", y=1.02, parse_math=False)
     axes.tick_params(labelsize=8, length=3)
     axes.spines[["top", "right"]].set_visible(False)
 
@@ -144,7 +145,7 @@ def _draw_map(axes: Axes, shown: LossMap) -> None:
 
 
 def _draw_strip(axes: Axes, shown: LossMap) -> None:
-    bar = axes.inset_axes((0.3, 1.17, 0.7, 0.035))
+    bar = axes.inset_axes((0.3, 1.2, 0.7, 0.035))
     bar.imshow(np.linspace(0, 1, 128)[None], aspect="auto", cmap="viridis", extent=(0, 1, 0, 1))
     bar.set_yticks([])
     bar.set_xticks(list(shown.strip.unit().ticks), list(shown.strip.texts), fontsize=7)
