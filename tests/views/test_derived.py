@@ -264,7 +264,14 @@ def test_log_axes_have_few_ticks_inside_their_limits(low, ratio):
     assert len(set(axis.texts)) == len(axis.texts)
 
 
+@pytest.mark.parametrize("high", np.geomspace(0.01, 0.1, 23) * 317)
+@pytest.mark.parametrize("low", [0.0, 0.02, -0.4])
+def test_linear_axes_have_about_five_ticks(low, high):
+    assert 4 <= len(linear_axis(low * high, high).ticks) <= 7
+
+
 @pytest.mark.parametrize("high", [0.013, 1.0, 1.7, 930.0, 2e5])
-def test_linear_axes_have_four_to_seven_ticks(high):
-    assert 3 <= len(linear_axis(0.0, high).ticks) <= 8
-    assert 3 <= len(symmetric_axis(high).ticks) <= 7
+def test_symmetric_axes_have_zero_and_as_many_ticks_on_either_side(high):
+    ticks = symmetric_axis(high).ticks
+    assert 3 <= len(ticks) <= 7
+    assert ticks == tuple(-tick for tick in ticks[::-1])

@@ -54,7 +54,7 @@ def symmetric_axis(largest: float) -> AxisPlan:
 
 
 def linear_axis(low: float, high: float) -> AxisPlan:
-    """A linear axis with four to six round ticks.
+    """A linear axis with about five round ticks.
 
     Examples
     --------
@@ -64,10 +64,14 @@ def linear_axis(low: float, high: float) -> AxisPlan:
     if not (math.isfinite(low) and math.isfinite(high)) or low == high:
         middle = low if math.isfinite(low) else 0.0
         low, high = middle - (abs(middle) * 0.1 or 1.0), middle + (abs(middle) * 0.1 or 1.0)
-    step = next(each for each in _steps(high - low) if high / each - low / each < 6.5)
-    first, last = math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9)
-    ticks = tuple(float(f"{place * step:.12g}") for place in range(first, last + 1))
+    # Seven ticks rather than three, where round steps leave that choice.
+    ticks = min((_multiples(low, high, step) for step in _steps(high - low)), key=lambda each: abs(len(each) - 5.1))
     return AxisPlan(low, high, ticks, tuple(written(tick) for tick in ticks))
+
+
+def _multiples(low: float, high: float, step: float) -> tuple[float, ...]:
+    first, last = math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9)
+    return tuple(float(f"{place * step:.12g}") for place in range(first, last + 1))
 
 
 def log_axis(low: float, high: float, most: int = 6) -> AxisPlan:
@@ -130,7 +134,7 @@ def written(value: float) -> str:
 def _steps(span: float) -> list[float]:
     """Round steps around a span, small to large."""
     decade = 10.0 ** (math.floor(math.log10(span)) - 2)
-    return [lead * decade * 10.0**power for power in range(4) for lead in (1.0, 2.0, 2.5, 4.0, 5.0)]
+    return [lead * decade * 10.0**power for power in range(4) for lead in (1.0, 2.0, 2.5, 5.0)]
 
 
 def round_up(value: float) -> float:
