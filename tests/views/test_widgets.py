@@ -1,19 +1,12 @@
 """The widgets without a browser: set values, read the layers' arrays, count the redraws."""
 
-import warnings
-
 import numpy as np
 import pytest
 from closed_form_store import HOSTILE, PEAKS, closed_form_store
-
-with warnings.catch_warnings():
-    # bqscales, a part of bqplot, builds its date scale in a way that traitlets calls old.
-    warnings.simplefilter("ignore", DeprecationWarning)
-    from workbench.views.widgets.workbench import Workbench
-
 from ipywidgets.widgets.widget import _instances
 
 from workbench.views.selection import Selection
+from workbench.views.widgets.workbench import Workbench
 
 
 @pytest.fixture
