@@ -48,9 +48,10 @@ HOSTILE = "[red]<img src=x onerror=alert(1)>"
         (["plan", "bench"], "plan"),
     ],
 )
-def test_what_cannot_be_done_is_said(workbench: Run, store: Path, words: list[str], said: str) -> None:
-    found = workbench(*words)
-    assert found.returncode == 2, found.stdout
+def test_what_cannot_be_done_is_said(store: Path, monkeypatch: pytest.MonkeyPatch, words: list[str], said: str) -> None:
+    monkeypatch.chdir(store.parent)
+    found = CliRunner().invoke(cli.app, words, prog_name="workbench")
+    assert found.exit_code == 2, found.stdout
     assert said in found.stderr
     assert found.stdout == ""
     assert not set("│─╭╮╰╯") & set(found.stderr)
