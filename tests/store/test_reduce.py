@@ -5,7 +5,6 @@ from __future__ import annotations
 import math
 import subprocess
 import sys
-from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -158,16 +157,6 @@ def test_all_captures_bad_is_still_a_store(bench):
     assert store.pointers().rows.shape == (0, 0, 0, 0)
     assert store.curves.sizes["point"] == 0
     assert len(store.failures) == 1
-
-
-def test_an_air_run_is_a_failure_that_says_so(bench):
-    bench.add("run-0.txt", 1.0)
-    bench.add("run-1.txt", 1.0, kind="air", specimen="M1")
-    campaign = bench.campaign()
-    only_rings = {name: each for name, each in campaign.specimens.items() if name != "M1"}
-    store = reduce(replace(campaign, specimens=only_rings), bench.into, progress=False)
-    assert store.runs["capture"].values.tolist() == ["run-0.txt"]
-    assert "'M1' is an inductor" in store.failures["reason"][0]
 
 
 def test_a_run_set_aside_stays_so_when_its_capture_changes(three):

@@ -16,7 +16,7 @@ from workbench.bench.circuit import Channel, Circuit
 from workbench.bench.specimen import Specimen
 from workbench.capture.campaign import Columns
 from workbench.capture.findings import few, shown
-from workbench.capture.sheet_model import SENSORS, Sheet, model_at
+from workbench.capture.sheet_model import SENSORS, LimitsTable, Sheet, model_at
 
 SHEET_NAME = "campaign.toml"
 
@@ -278,6 +278,22 @@ def columns_of(sheet: Sheet) -> Columns:
     return columns if table.sample_rate is None else replace(columns, sample_rate=table.sample_rate.value)
 
 
+def limits_in(text: str) -> dict[str, float]:
+    """The limits that a sheet, checked before, changes, by the mark's key.
+
+    Examples
+    --------
+    >>> limits_in('[limits]\\nunsteady = 0.01')
+    {'unsteady': 0.01}
+    """
+    limits = _tidy_limits(tomllib.loads(text)).get("limits", {})
+    return _given(LimitsTable.model_validate(limits))
+
+
+def _given(limits: LimitsTable) -> dict[str, float]:
+    return {key: value for key, value in dict(limits).items() if value is not None}
+
+
 def limits_of(sheet: Sheet) -> dict[str, float]:
     """The limits that the sheet changes, by the mark's key."""
-    return {key: value for key, value in dict(sheet.limits).items() if value is not None}
+    return _given(sheet.limits)

@@ -5,6 +5,8 @@ The sheet's ``[limits]`` changes a limit by the mark's name with underscores.
 
 from __future__ import annotations
 
+import math
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Literal
 
@@ -86,6 +88,29 @@ _ROWS = (
 
 MARKS: dict[str, Mark] = {row.name: row for row in _ROWS}
 """By name, in the order of their flag bits: the first is 1, the second 2, and so on."""
+
+
+def mark_sentence(name: str, what: str, limits: Mapping[str, float]) -> str:
+    """What was seen, the limit, and what to do.
+
+    Parameters
+    ----------
+    name : str                    of the mark; another word is a remark without a limit
+    what : str                    what was seen
+    limits : {mark key: limit}    those that the sheet changes
+
+    Examples
+    --------
+    >>> mark_sentence("few samples", "12 samples a cycle", {})
+    'few samples: 12 samples a cycle (limit 100 samples a cycle). To do: raise the sampling rate.'
+    """
+    if name not in MARKS:
+        return f"{name}: {what}."
+    mark = MARKS[name]
+    limit = limits.get(mark.key, mark.limit)
+    unit = "" if mark.unit == "1" else f" {mark.unit}"
+    bound = f" (limit {limit:g}{unit})" if math.isfinite(limit) else ""
+    return f"{name}: {what}{bound}. To do: {mark.remedy}."
 
 
 def mark_bits(names: tuple[str, ...]) -> int:

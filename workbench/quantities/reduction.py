@@ -7,7 +7,8 @@ from collections.abc import Mapping
 
 import numpy as np
 
-from workbench.base.errors import CaptureError, LoopError
+from workbench.base.errors import LoopError
+from workbench.base.vocabulary import QUANTITIES
 from workbench.bench.cautions import voltage_cautions
 from workbench.bench.circuit import Circuit
 from workbench.bench.specimen import Specimen
@@ -16,8 +17,9 @@ from workbench.capture.record import Record
 from workbench.cycle.spread import on_phase
 from workbench.loop.assemble import Loop, assemble, waves
 from workbench.quantities.budget import Figures, figures
+from workbench.quantities.initial import first_curve
 from workbench.quantities.loop_marks import loop_marks
-from workbench.quantities.mark_table import MARKS
+from workbench.quantities.mark_table import MARKS, mark_sentence
 from workbench.quantities.record_marks import record_marks
 from workbench.quantities.result import PHASE_POINTS, RunResult
 from workbench.quantities.specimen_marks import specimen_marks
@@ -31,7 +33,7 @@ HIGHEST_INDUCTION = 100.0
 def reduce_record(
     record: Record, line: RunLine, specimen: Specimen, circuit: Circuit, limits: Mapping[str, float]
 ) -> RunResult:
-    """Loop, quantities, budget and marks of one capture.
+    """Loop (or first curve), quantities, budget and marks of one capture.
 
     Parameters
     ----------
@@ -48,23 +50,36 @@ def reduce_record(
     ------
     CaptureError    the capture gives no loop; the text says why and what to do
     """
-    if line.kind not in ("loop", "trace"):
-        raise CaptureError(
-            f"runs of kind '{line.kind}' are read but not reduced by this version",
-            "Leave the line in the run list: it is reduced when a version that can do it comes.",
-        )
+    limit = {name: limits.get(mark.key, mark.limit) for name, mark in MARKS.items()}
+    if line.kind == "initial":
+        return _first_curve(record, line, specimen, circuit, limit, limits)
     loop = assemble(record, specimen, circuit, line.frequency)
     found = figures(loop, (record.field_step, record.induction_step))
     _insist_on_physics(found)
-    limit = {name: limits.get(mark.key, mark.limit) for name, mark in MARKS.items()}
     seen = {
         **record_marks(record, loop.waveform, limit),
         **loop_marks(loop, found, line, limit),
-        **specimen_marks(loop, found, line, limit),
+        **specimen_marks(specimen, found, line, limit),
     }
     if loop.harmonics.swapped:
         seen["lead swapped"] = "the in-phase permeability was negative; the induction channel was turned round"
-    return _result(loop, found, seen, limit)
+    return _result(loop, found, seen, limits)
+
+
+def _first_curve(
+    record: Record, line: RunLine, specimen: Specimen, circuit: Circuit,
+    limit: dict[str, float], limits: Mapping[str, float],
+) -> RunResult:  # fmt: skip
+    """An open curve in place of a loop: `field` and `induction` are its points, from the origin up."""
+    curve = first_curve(record, specimen, circuit)
+    unknown = dict.fromkeys(QUANTITIES, math.nan)
+    figures = Figures(unknown | curve.values, unknown | curve.uncertainties, unknown, curve.budget, {}, (0.0, 0.0))
+    seen = specimen_marks(specimen, figures, line, limit)
+    return RunResult(
+        curve.field, curve.induction, figures.values, figures.uncertainties, figures.dof, curve.budget,
+        tuple(name for name in MARKS if name in seen),
+        {**{name: mark_sentence(name, text, limits) for name, text in seen.items()}, "curve": curve.sentence()},
+    )  # fmt: skip
 
 
 def _insist_on_physics(found: Figures) -> None:
@@ -88,7 +103,7 @@ def _insist_on_physics(found: Figures) -> None:
         )
 
 
-def _result(loop: Loop, found: Figures, seen: Mapping[str, str], limit: Mapping[str, float]) -> RunResult:
+def _result(loop: Loop, found: Figures, seen: Mapping[str, str], limits: Mapping[str, float]) -> RunResult:
     field, induction = waves(loop.harmonics, PHASE_POINTS, loop.single)
     marks = tuple(name for name in MARKS if name in seen)
     return RunResult(
@@ -99,18 +114,9 @@ def _result(loop: Loop, found: Figures, seen: Mapping[str, str], limit: Mapping[
         dof=found.dof,
         budget=found.budget,
         marks=marks,
-        seen={name: _sentence(name, text, limit) for name, text in seen.items()},
+        seen={name: mark_sentence(name, text, limits) for name, text in seen.items()},
         cautions=_cautions(loop),
     )
-
-
-def _sentence(name: str, what: str, limit: Mapping[str, float]) -> str:
-    """What was seen, the limit, and what to do."""
-    if name not in MARKS:
-        return f"{name}: {what}."
-    mark = MARKS[name]
-    bound = f" (limit {limit[name]:g} {mark.unit.replace('1', '')}".rstrip() + ")" if math.isfinite(limit[name]) else ""
-    return f"{name}: {what}{bound}. To do: {mark.remedy}."
 
 
 def _cautions(loop: Loop) -> tuple[str, ...]:

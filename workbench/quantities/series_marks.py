@@ -66,10 +66,10 @@ def series_marks(series: Series, limits: Mapping[str, float]) -> list[Seen]:
 def _groups(series: Series, fewest: int) -> Iterator[npt.NDArray[np.intp]]:
     """Places of the runs of each setting that has enough repeats, in the order of repeats."""
     order = np.lexsort((series.repeat, series.setting))
-    edges = np.flatnonzero(np.diff(series.setting[order])) + 1
-    for group in np.split(order, edges):
-        if len(group) >= fewest:
-            yield group
+    starts = np.concatenate([[0], np.flatnonzero(np.diff(series.setting[order])) + 1, [len(order)]])
+    # Most settings of a large campaign have one run: only the others are gone through.
+    for place in np.flatnonzero(np.diff(starts) >= fewest):
+        yield order[starts[place] : starts[place + 1]]
 
 
 def _repeats(series: Series, limit: float) -> Iterator[Seen]:

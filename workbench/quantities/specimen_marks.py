@@ -7,7 +7,6 @@ import math
 from workbench.base.constants import MU0
 from workbench.bench.specimen import Specimen, section_from_height, section_from_mass
 from workbench.capture.campaign import RunLine
-from workbench.loop.assemble import Loop
 from workbench.quantities.budget import Figures
 from workbench.quantities.result import RUN_SOURCES
 
@@ -25,9 +24,8 @@ Limits = dict[str, float]
 Seen = dict[str, str]
 
 
-def specimen_marks(loop: Loop, figures: Figures, line: RunLine, limit: Limits) -> Seen:
+def specimen_marks(specimen: Specimen, figures: Figures, line: RunLine, limit: Limits) -> Seen:
     """Marks of geometry, material and claims, each with what was seen and the limit."""
-    specimen = loop.setup.specimen
     return {
         **_shielding(specimen, figures, limit),
         **_ring(specimen, line, limit),
@@ -100,7 +98,7 @@ def _standard(specimen: Specimen, line: RunLine, figures: Figures) -> Seen:
 def _claims(figures: Figures, limit: Limits) -> Seen:
     loss, uncertainty = figures.values["specific_loss"], figures.uncertainties["specific_loss"]
     # A sheet without any uncertainty claims nothing: then only the scatter is there.
-    stated = any(source not in RUN_SOURCES for source in figures.budget["specific_loss"])
+    stated = any(source not in RUN_SOURCES for source in figures.budget.get("specific_loss", {}))
     if stated and 2 * uncertainty < limit["claims too much"] * abs(loss):
         return {"claims too much": f"U (k = 2) of the specific loss is {2 * uncertainty / abs(loss):.2%}"}
     return {}

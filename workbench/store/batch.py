@@ -69,14 +69,9 @@ def reduce_batch(campaign: Campaign, lines: Sequence[RunLine]) -> tuple[Outcome,
 def _reduce_one(campaign: Campaign, line: RunLine) -> Outcome:
     try:
         record = read_capture(campaign, line)
-        if line.specimen not in campaign.specimens:
-            raise CaptureError(
-                f"'{line.specimen}' is an inductor: runs of kind '{line.kind}' are not reduced by this version",
-                "Leave the line in the run list: it is reduced when a version that can do it comes.",
-            )
         specimen, circuit = campaign.specimens[line.specimen], campaign.circuits[line.circuit]
         result = reduce_record(record, line, specimen, circuit, campaign.limits)
-        return _packed(line, record.sha256, result)
+        return packed(line, record.sha256, result)
     except CaptureError as error:
         return Failed(line, error.reason, error.remedy)
     except Exception as error:
@@ -88,7 +83,8 @@ def _reduce_one(campaign: Campaign, line: RunLine) -> Outcome:
         )
 
 
-def _packed(line: RunLine, sha256: str, result: RunResult) -> Reduced:
+def packed(line: RunLine, sha256: str, result: RunResult) -> Reduced:
+    """A result in the types in which it is stored."""
     parts = (result.values, result.uncertainties, result.dof)
     budget = [[result.budget.get(name, {}).get(source, 0.0) for source in SOURCES] for name in NAMES]
     return Reduced(

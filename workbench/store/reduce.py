@@ -18,6 +18,7 @@ from workbench.base.errors import CaptureError, StoreError
 from workbench.capture.campaign import Campaign, RunLine
 from workbench.capture.read import capture_sha256
 from workbench.store.batch import Outcome, reduce_batch
+from workbench.store.calibration import Calibration, calibrate
 from workbench.store.campaign import prepare_store, update_campaign
 from workbench.store.committer import Committer
 from workbench.store.compaction import compact
@@ -62,17 +63,27 @@ def reduce(campaign: Campaign, into: str | os.PathLike[str], workers: int = 1, p
         raise StoreError(f"Reducing into {store}: wanted 1 or more workers; found {workers}. Give a number from 1.")
     prepare_store(store, campaign)
     with Writer(store) as writer:
-        fingerprints = settings_fingerprints(campaign)
+        calibration = calibrate(campaign, writer.set_aside())
+        fingerprints = _fingerprints(campaign, calibration)
         update_campaign(writer, campaign)
         lines = _to_do(campaign, writer, fingerprints)
         committer = Committer(writer, campaign, fingerprints)
+        committer.take([calibration.outcomes[line.capture] for line in lines if line.kind == "air"])
+        others = [line for line in lines if line.kind != "air"]
         with Interrupts() as interrupts:
             try:
-                _work(campaign, lines, workers, progress, committer, interrupts)
+                _work(calibration.campaign, others, workers, progress, committer, interrupts)
             finally:
                 committer.finish()
         compact(writer, committer.about)
     return Store(store)
+
+
+def _fingerprints(campaign: Campaign, calibration: Calibration) -> dict[str, str]:
+    """Of air runs from the sheet's circuits, of all others from those that the air runs have put right."""
+    found = settings_fingerprints(calibration.campaign)
+    own = settings_fingerprints(campaign)
+    return {capture: own[capture] if capture in calibration.outcomes else each for capture, each in found.items()}
 
 
 def _to_do(campaign: Campaign, writer: Writer, fingerprints: dict[str, str]) -> list[RunLine]:

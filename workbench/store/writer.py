@@ -71,6 +71,11 @@ class Writer:
         query = "SELECT capture, fingerprint, capture_sha256 FROM runs WHERE until IS NULL"
         return self.connection.execute(query).fetchall()
 
+    def set_aside(self) -> set[str]:
+        """Captures that are set aside now."""
+        rows = self.connection.execute("SELECT capture, standing FROM standings ORDER BY rowid")
+        return {capture for capture, standing in dict(rows).items() if standing == SET_ASIDE}
+
     def live_failures(self) -> list[tuple[str, str, str]]:
         """Capture, reason and remedy of every failure."""
         query = "SELECT capture, reason, remedy FROM failures WHERE until IS NULL"
