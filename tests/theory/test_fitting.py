@@ -8,7 +8,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from workbench.theory.fitting import average, least_squares, linear_fit
+from workbench.theory.fitting import Fit, least_squares, linear_fit
 
 # NIST StRD Bennett5, see data/NOTE.md.
 CERTIFIED = [-2.5235058043e03, 4.6736564644e01, 9.3218483193e-01]
@@ -105,12 +105,15 @@ def test_intervals_hold_the_truth_in_95_of_100() -> None:
     assert np.all(np.abs(inside / 1000 - 0.95) < 0.028)
 
 
-def test_a_law_that_fails_has_no_weight() -> None:
+def test_a_law_that_fails_is_seen() -> None:
     x = np.linspace(1, 4, 12)
     y = 3 + 2 * x
-    fits = {"constant": linear_fit(np.ones((12, 1)), y, 0.01), "line": linear_fit(np.stack([0 * x + 1, x], 1), y, 0.01)}
-    found = average(fits)
-    assert found.weights["line"] == pytest.approx(1.0)
-    assert not fits["constant"].holds
-    assert fits["line"].holds
-    assert found.value == pytest.approx(3.0)
+    assert not linear_fit(np.ones((12, 1)), y, 0.01).holds
+    assert linear_fit(np.stack([0 * x + 1, x], 1), y, 0.01).holds
+
+
+def test_chance_of_chi_squared_from_the_tables() -> None:
+    """95 % points of chi squared for 1, 5 and 10 degrees of freedom: 3.841, 11.070, 18.307 (any table)."""
+    for dof, point in ((1, 3.841), (5, 11.070), (10, 18.307)):
+        fit = Fit(np.zeros(1), np.eye(1), np.zeros((0, 1)), point, dof)
+        assert fit.chance == pytest.approx(0.05, abs=2e-5)

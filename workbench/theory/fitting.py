@@ -1,8 +1,8 @@
-"""Least squares with known uncertainties, and means over several laws that might hold."""
+"""Least squares with known uncertainties, those that the points share among them."""
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -108,51 +108,3 @@ def _solved(start: Floats, jacobian: Floats, residual: Floats, weight: Floats, s
     chi_square = float(np.sum((weight * (residual - jacobian @ step)) ** 2))
     shares = (moves * weight) @ q @ inverse.T
     return Fit(start + step, inverse @ inverse.T, shares, chi_square, len(weight) - len(r))
-
-
-@dataclass(frozen=True, eq=False)
-class Averaged:
-    """One parameter over several laws."""
-
-    value: float
-    spread: float
-    """Standard uncertainty from the points' own part and from the choice of the law."""
-    shares: Floats
-    """(source,) signed, from what the points share."""
-    weights: Mapping[str, float]
-    """{law: weight}, summing to 1."""
-
-    @property
-    def uncertainty(self) -> float:
-        """Standard uncertainty."""
-        return float(np.sqrt(self.spread**2 + np.sum(self.shares**2)))
-
-
-def average(fits: Mapping[str, Fit], place: int = 0) -> Averaged:
-    """Mean of a parameter that stands at `place` in every law, weighted by how well each law does.
-
-    Notes
-    -----
-    Weights exp(-AIC/2) with AIC = chi^2 + 2 p; variance sum w (u^2 + (value - mean)^2).  Source:
-    Burnham and Anderson, Model Selection and Multimodel Inference, 2nd ed. 2002, chapter 4 (from
-    memory).  Where even the best law leaves chi^2/dof above 1, all uncertainties of the points are
-    enlarged until it does not (Birge's ratio).
-
-    Examples
-    --------
-    >>> def law(value, chi_square):
-    ...     return Fit(np.array([value]), np.array([[0.01]]), np.zeros((0, 1)), chi_square, 5)
-    >>> mean = average({"one": law(1.0, 4.0), "other": law(1.2, 4.0)})
-    >>> round(mean.value, 6), round(mean.uncertainty, 6)           # sqrt(0.1^2 + 0.1^2)
-    (1.1, 0.141421)
-    """
-    birge = max(1.0, min(fit.chi_square / fit.dof for fit in fits.values()))
-    score = np.array([fit.chi_square / birge + 2 * len(fit.values) for fit in fits.values()])
-    weight = np.exp(-(score - score.min()) / 2)
-    weight /= weight.sum()
-    values = np.array([fit.values[place] for fit in fits.values()])
-    variances = birge * np.array([fit.spread[place, place] for fit in fits.values()])
-    mean = float(weight @ values)
-    spread = float(np.sqrt(weight @ (variances + (values - mean) ** 2)))
-    shares = weight @ np.array([fit.shares[:, place] for fit in fits.values()])
-    return Averaged(mean, spread, shares, dict(zip(fits, weight.tolist(), strict=True)))

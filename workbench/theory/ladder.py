@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -18,7 +19,7 @@ _OWN = np.array([source in RUN_SOURCES for source in SOURCES])
 
 
 @dataclass(frozen=True, eq=False)
-class Series:
+class Course:
     """Two quantities of the same runs, y against x, with the uncertainty of the first all on y.
 
     A deviation of x is one of y by the slope of the curve, so each of both counts once, with its sign.
@@ -49,7 +50,8 @@ def read_ladder(store: Store, specimen: str, frequency: float, temperature: floa
     Rungs are taken to share their circuit: where the ladder was measured with two, what they do not
     share is taken as shared too.
     """
-    return _sorted(_at(store.cube(), specimen=specimen, frequency=frequency, temperature=temperature))
+    found = _at(store.cube(), {"specimen": specimen, "frequency": frequency, "temperature": temperature})
+    return found.isel(rung=np.argsort(found["field_tip"].values, kind="stable"))
 
 
 def read_sweep(store: Store, specimen: str, peak: float, temperature: float) -> xr.Dataset:
@@ -65,11 +67,11 @@ def read_sweep(store: Store, specimen: str, peak: float, temperature: float) -> 
     """
     cube = store.cube()
     peak_name = "peak_field" if "peak_field" in cube.dims else "peak_induction"
-    found = _at(cube, **{"specimen": specimen, peak_name: peak, "temperature": temperature})
+    found = _at(cube, {"specimen": specimen, peak_name: peak, "temperature": temperature})
     return found.isel(rung=np.argsort(found["measured_frequency"].values, kind="stable"))
 
 
-def _at(cube: xr.Dataset, **keys: str | float) -> xr.Dataset:
+def _at(cube: xr.Dataset, keys: Mapping[str, str | float]) -> xr.Dataset:
     places: dict[str, int] = {}
     for name, wanted in keys.items():
         axis = cube[name].values
@@ -89,11 +91,7 @@ def _at(cube: xr.Dataset, **keys: str | float) -> xr.Dataset:
     return chosen
 
 
-def _sorted(ladder: xr.Dataset) -> xr.Dataset:
-    return ladder.isel(rung=np.argsort(ladder["field_tip"].values, kind="stable"))
-
-
-def series(ladder: xr.Dataset, x: str, y: str) -> Series:
+def course(ladder: xr.Dataset, x: str, y: str) -> Course:
     """Quantity `y` against quantity `x` along a ladder; rungs where either cannot be computed are left out."""
     places = np.flatnonzero(np.isfinite(ladder[x].values) & np.isfinite(ladder[y].values))
     # Two rungs at the same x would have no slope between them.
@@ -104,4 +102,4 @@ def series(ladder: xr.Dataset, x: str, y: str) -> Series:
     slope = np.gradient(values, along) if len(along) > 1 else np.zeros(len(along))
     of_x, of_y = (rungs["budget"].sel(quantity=name).values.astype(float).T for name in (x, y))
     own = np.sqrt(np.sum(of_y[_OWN] ** 2, axis=0) + slope**2 * np.sum(of_x[_OWN] ** 2, axis=0))
-    return Series(along, values, own, of_y[~_OWN] - slope * of_x[~_OWN])
+    return Course(along, values, own, of_y[~_OWN] - slope * of_x[~_OWN])
