@@ -72,7 +72,7 @@ def test_notebook_ran_and_shows_figures(folder: Path) -> None:
     assert sum("image/png" in output.get("data", {}) for output in outputs) == 2
     text = "".join(output.get("text", "") for output in outputs)
     assert "loss_per_cycle of 5 loops follows from the loops" in text
-    assert "1.2 ± 0.024" in text  # B̂ = 1.2 T with u = 1 %, k = 2
+    assert "1.200 ± 0.024" in text  # B̂ = 1.2 T with u = 1 %, k = 2
 
 
 def test_text_of_a_sheet_is_data_in_the_notebook(folder: Path, hostile: str) -> None:

@@ -41,9 +41,19 @@ _GUARD = """\
 assert hashlib.sha256(Path("campaign.toml").read_bytes()).hexdigest() == runs.attrs["sheet_sha256"]"""
 
 _TABLE = """\
+def plus_minus(value, expanded):
+    # Two digits of U = 2 u, and the value rounded to match.
+    if not np.isfinite(value):
+        return "–"
+    if not expanded > 0:
+        return f"{value:.6g}"
+    places = max(0, 1 - int(np.floor(np.log10(expanded))))
+    return f"{value:.{places}f} ± {expanded:.{places}f}"
+
+
 def with_u(name):
-    value, u = runs[name].values, 2 * runs[f"u_{name}"].values
-    return [f"{v:.4g} ± {e:.2g}" if np.isfinite(v) else "–" for v, e in zip(value, u)]
+    return [plus_minus(value, 2 * u) for value, u in zip(runs[name].values, runs[f"u_{name}"].values)]
+
 
 figures = ["field_tip", "induction_tip", "coercivity", "remanence", "amplitude_permeability", "specific_loss"]
 table = pd.DataFrame({
@@ -53,7 +63,7 @@ table = pd.DataFrame({
 tips = pd.Series(runs.field_tip.values).dropna()
 top = tips.groupby([table[name].loc[tips.index] for name in ("specimen", "f / Hz", "T / degC")]).idxmax()
 print("The highest step of each ladder, the first 40 of them:")
-print(table.loc[sorted(top)].head(40).to_string(index=False))"""
+print(table.loc[top].head(40).to_string(index=False))"""
 
 _DOUBTS = """\
 masks, words = runs.marks.attrs["flag_masks"], runs.marks.attrs["flag_meanings"].split()
