@@ -43,6 +43,7 @@ if TYPE_CHECKING:
     from workbench.store.open import open_store
     from workbench.store.reduce import reduce
     from workbench.views.widgets.workbench import Workbench
+    from workbench.write.trace_back import trace_back
 
 __version__ = version("bh-loop-workbench")
 __all__ = [
@@ -58,6 +59,7 @@ __all__ = [
     "open_store",
     "read_campaign",
     "reduce",
+    "trace_back",
 ]
 
 # Loaded when first asked for: the command line would otherwise wait a second for arrays and
@@ -66,6 +68,7 @@ _LATER = {
     "read_campaign": "workbench.capture.read",
     "reduce": "workbench.store.reduce",
     "open_store": "workbench.store.open",
+    "trace_back": "workbench.write.trace_back",
     "Workbench": "workbench.views.widgets.workbench",
 }
 

@@ -160,6 +160,16 @@ def table_command(
     return ALL_WELL
 
 
+@_command("trace-back")
+def trace_back_command(path: StorePath, capture: Capture) -> int:
+    """Show one run's whole way from its capture to its figures, with their budgets."""
+    from workbench.store.open import open_store
+    from workbench.write.trace_back import trace_back
+
+    _say(str(trace_back(open_store(path), capture)))
+    return ALL_WELL
+
+
 @_command("draft")
 def draft_command(
     folder: Annotated[Path, typer.Argument(metavar="FOLDER", help="A folder of captures.")],
