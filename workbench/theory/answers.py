@@ -96,7 +96,7 @@ def radial_bias_of(store: Store, capture: str) -> RadialBias:
     doing = f"Stating the radial bias of {capture}"
     if not ratio > 1:
         remedy = "Give outer_diameter and inner_diameter in the sheet."
-        raise TheoryError(doing, "a ring", f"D/d = {ratio:g} of {run['specimen']}", remedy)
+        raise TheoryError(doing, "a ring", f"D/d = {ratio:g} of {specimen}", remedy)
     ladder = read_ladder(store, specimen, run["frequency"], run["temperature"])
     h, b, w = (ladder[name].values for name in ("field_tip", "induction_tip", "loss_per_cycle"))
     rung = int(np.argmin(np.abs(np.log(h / run["field_tip"]))))
@@ -104,7 +104,7 @@ def radial_bias_of(store: Store, capture: str) -> RadialBias:
 
 
 def static_coercivity_of(
-    store: Store, specimen: str, peak: float, temperature: float, reproducibility: float = 0.0
+    store: Store, specimen: str, at: float, temperature: float, by: str = "induction_tip", reproducibility: float = 0.0
 ) -> StaticCoercivity:
     """Coercivity at rest from the frequencies at which one peak was measured.
 
@@ -112,15 +112,18 @@ def static_coercivity_of(
     ----------
     store : Store
     specimen : str
-    peak : float                A/m or T, as the campaign was set
+    at : float                  T or A/m
     temperature : float         degC, as set
+    by : str                    what `at` is, as of `read_sweep`: by default the induction reached, since at
+                                the same field the induction falls with the frequency
     reproducibility : float     relative standard deviation of a run that its scatter does not show
 
     Raises
     ------
-    TheoryError    as `static_coercivity` and `read_sweep`
+    TheoryError      as `static_coercivity` and `read_sweep`
+    QuantityError    as `read_sweep`
     """
-    runs = course(read_sweep(store, specimen, peak, temperature), "measured_frequency", "coercivity")
+    runs = course(read_sweep(store, specimen, at, temperature, by), "measured_frequency", "coercivity")
     return static_coercivity(runs.x, runs.y, runs.own, runs.shared, reproducibility)
 
 
@@ -172,7 +175,7 @@ def penetration_of(store: Store, capture: str) -> Penetration:
         missing = "thickness" if not math.isfinite(d) else "resistivity"
         raise TheoryError(
             f"Finding the skin depth for {capture}", "thickness and resistivity of the specimen",
-            f"no {missing} of {run['specimen']}", "Give both in the sheet.",
+            f"no {missing} of {specimen}", "Give both in the sheet.",
         )  # fmt: skip
     f, b = run["measured_frequency"], run["induction_tip"]
     depth = skin_depth(rho, f, run["amplitude_permeability"])

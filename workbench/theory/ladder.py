@@ -11,6 +11,7 @@ import xarray as xr
 
 from workbench.quantities.result import RUN_SOURCES, SOURCES
 from workbench.store.open import Store
+from workbench.store.schema import PEAKS
 from workbench.theory.refusal import TheoryError
 
 Floats = npt.NDArray[np.float64]
@@ -54,8 +55,14 @@ def read_ladder(store: Store, specimen: str, frequency: float, temperature: floa
     return found.isel(rung=np.argsort(found["field_tip"].values, kind="stable"))
 
 
-def read_sweep(store: Store, specimen: str, peak: float, temperature: float) -> xr.Dataset:
-    """Loops of one specimen at one peak (as set) and temperature, over the frequencies.
+def read_sweep(store: Store, specimen: str, at: float, temperature: float, by: str = "induction_tip") -> xr.Dataset:
+    """Loops of one specimen at one peak and temperature, over the frequencies.
+
+    Parameters
+    ----------
+    by : str      a tip reached, read off each ladder ("induction_tip", "field_tip", "polarization_tip"),
+                  or a peak as set ("peak_field", "peak_induction")
+    at : float    T or A/m
 
     Returns
     -------
@@ -64,10 +71,10 @@ def read_sweep(store: Store, specimen: str, peak: float, temperature: float) -> 
     Raises
     ------
     TheoryError          no such specimen, peak or temperature, or no loop there
+    QuantityError        `by` is none of these
     """
-    cube = store.cube()
-    peak_name = "peak_field" if "peak_field" in cube.dims else "peak_induction"
-    found = _at(cube, {"specimen": specimen, peak_name: peak, "temperature": temperature})
+    cube = store.cube(by) if by in PEAKS else store.cube(by, [at])
+    found = _at(cube, {"specimen": specimen, by: at, "temperature": temperature})
     return found.isel(rung=np.argsort(found["measured_frequency"].values, kind="stable"))
 
 
@@ -83,8 +90,9 @@ def _at(cube: xr.Dataset, keys: Mapping[str, str | float]) -> xr.Dataset:
             )
         places[name] = int(np.flatnonzero(same)[0])
     chosen = cube.isel(places)
-    (rung,) = (str(dim) for dim in chosen["n_repeats"].dims)
-    chosen = chosen.rename({rung: "rung"}).isel(rung=np.flatnonzero(chosen["n_repeats"].values > 0))
+    frequencies = chosen["measured_frequency"]
+    (rung,) = (str(dim) for dim in frequencies.dims)
+    chosen = chosen.rename({rung: "rung"}).isel(rung=np.flatnonzero(np.isfinite(frequencies.values)))
     if not chosen.sizes["rung"]:
         settings = ", ".join(f"{name} {value}" for name, value in keys.items())
         raise TheoryError("Reading a ladder", "loops that are kept", f"none at {settings}", "Choose another setting.")
