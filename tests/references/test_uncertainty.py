@@ -5,10 +5,12 @@ import math
 import numpy as np
 import pytest
 import uncertainties
+from scipy import stats
 
-from tests.references.test_ring import BENCH, LINE, volts
+from tests.references.test_ring import BENCH, LINE, RING, volts
 from workbench.base.measured import Measured, parse_quantity
 from workbench.base.uncertainty import effective_dof, enlargement, with_uncertainty
+from workbench.bench.circuit import Channel, Circuit
 from workbench.bench.specimen import Specimen, geometry
 from workbench.quantities.reduction import reduce_record
 
@@ -100,3 +102,20 @@ def test_two_digits_of_uncertainty(value: float, u: float, text: str) -> None:
     assert with_uncertainty(value, u) == text
 
 
+
+
+def test_a_delay_that_bends_the_loss_is_drawn() -> None:
+    """W is proportional to sin(d + p), p normal with s = 0.5 rad: its 95 % point from scipy, no linearisation."""
+    spread = 0.5
+    field = Channel("shunt", {"resistance": Measured(1.0)}, delay=Measured(0.0, spread / (2 * math.pi * 50)))
+    found = reduce_record(volts(), LINE, RING, Circuit("main", field, BENCH.induction), {})
+    phases = stats.norm.ppf((np.arange(100_000) + 0.5) / 100_000) * spread
+    deviations = np.abs(np.sin(0.3 + phases) - math.sin(0.3)) * math.pi * 88.41941
+    assert found.uncertainties["loss_per_cycle"] == pytest.approx(np.quantile(deviations, 0.95) / 1.959964, rel=0.04)
+    assert "not linear" in found.seen
+    linear = math.pi * 88.41941 * math.cos(0.3) * spread
+    assert found.uncertainties["loss_per_cycle"] < 0.95 * linear
+
+
+def test_an_ordinary_budget_is_linear(uncertain_ring) -> None:
+    assert "not linear" not in uncertain_ring[1].seen

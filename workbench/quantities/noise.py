@@ -59,14 +59,14 @@ def quantised_spectra(waveform: Waveform, steps: tuple[float, float]) -> Complex
 
 def draws(waveform: Waveform, rms: Floats, count: int) -> Complexes:
     """Seeded noise on every harmonic; `rms` of a complex amplitude, by channel."""
-    parts = _normal_draws(count, 4 * waveform.harmonics.shape[-1]).reshape(count, -1, 2, 2)
+    parts = normal_draws(count, 4 * waveform.harmonics.shape[-1]).reshape(count, -1, 2, 2)
     noise = (parts[..., 0] + 1j * parts[..., 1]) / math.sqrt(2)
     return np.asarray(np.swapaxes(noise, 1, 2) * rms[:, None])
 
 
 @lru_cache(maxsize=8)
-def _normal_draws(count: int, width: int) -> Floats:
-    """Seeded normal draws, (count, width); the first columns, those of low harmonics, exactly uncorrelated.
+def normal_draws(count: int, width: int) -> Floats:
+    """Seeded normal draws, (count, width); the first columns exactly uncorrelated and of unit variance.
 
     The same draws serve every run: what chance correlates in them would bias every uncertainty alike.
     """

@@ -61,6 +61,9 @@ def reduce_record(
         **loop_marks(loop, found, line, limit),
         **specimen_marks(specimen, found, line, limit),
     }
+    if found.bent:
+        symbols = ", ".join(QUANTITIES[name].symbol for name in found.bent)
+        seen["not linear"] = f"the uncertainty of {symbols} was drawn (Monte Carlo of the inputs) and not linearised"
     if loop.harmonics.swapped:
         seen["lead swapped"] = "the in-phase permeability was negative; the induction channel was turned round"
     return _result(loop, found, seen, limits)
