@@ -49,7 +49,9 @@ def effective_dof(parts: Mapping[str, tuple[float, float]]) -> float:
     return total**2 / weight if weight > 0 else math.inf
 
 
-def with_uncertainty(value: float, uncertainty: float, unit: str = "", coverage: float = 2.0) -> str:
+def with_uncertainty(
+    value: float, uncertainty: float, unit: str = "", coverage: float = 2.0, bounded_at_zero: bool = False
+) -> str:
     """``value ± U`` with two significant digits of U = k u and the value rounded to match.
 
     Examples
@@ -60,6 +62,8 @@ def with_uncertainty(value: float, uncertainty: float, unit: str = "", coverage:
     '8410 ± 120'
     >>> with_uncertainty(1.5, float("nan"), "T")
     '1.5 T'
+    >>> with_uncertainty(0.0021, 0.0012, bounded_at_zero=True)      # noise alone raises it
+    'at most 0.0045'
     >>> with_uncertainty(1.5, 1e-12, "T")
     '1.5000000000000 ± 0.0000000000020 T'
     """
@@ -69,6 +73,8 @@ def with_uncertainty(value: float, uncertainty: float, unit: str = "", coverage:
     expanded = coverage * uncertainty
     if not math.isfinite(expanded) or expanded <= 0:
         return f"{value:.6g}{tail}"
+    if bounded_at_zero and value < expanded:
+        return f"at most {value + expanded:.2g}{tail}"
     digits = 1 - math.floor(math.log10(expanded))
     expanded = round(expanded, digits)
     # 0.0996 rounds up to 0.10: count the digits again, or three would be shown.

@@ -49,6 +49,9 @@ QUANTITIES = _table(
 )
 """Quantities of a run, in the order of tables."""
 
+BOUNDED_AT_ZERO = frozenset({"induction_distortion"})
+"""Quantities that noise alone raises and nothing makes negative: near zero they get an upper bound."""
+
 WAVEFORMS = _table(
     Word("field", "H", "A/m", "magnetic field strength", _IEV),
     Word("induction", "B", "T", "magnetic flux density", _IEV),

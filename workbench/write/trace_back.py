@@ -4,12 +4,13 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator, Mapping
+from contextlib import suppress
 from dataclasses import dataclass
 from html import escape
 
 from workbench.base.errors import StoreError, nearest
 from workbench.base.uncertainty import with_uncertainty
-from workbench.base.vocabulary import QUANTITIES, label, shown_unit
+from workbench.base.vocabulary import BOUNDED_AT_ZERO, QUANTITIES, label, shown_unit
 from workbench.capture.campaign import Campaign, RunLine
 from workbench.capture.read import read_campaign, read_capture
 from workbench.capture.record import Record
@@ -19,6 +20,8 @@ from workbench.quantities.result import RunResult
 from workbench.quantities.stages import SHOWN, Stage, stages
 from workbench.store.calibration import calibrate
 from workbench.store.open import Store
+from workbench.theory.answers import penetration_of, radial_bias_of
+from workbench.theory.refusal import TheoryError
 from workbench.write.plain import aligned
 
 _HEADLINE = ("specific_loss", "loss_per_cycle", "amplitude_permeability", "induction_tip")
@@ -88,7 +91,7 @@ def trace_back(store: Store, capture: str) -> TraceBack:
     result = reduce_record(record, line, specimen, circuit, campaign.limits)
     loop = assemble(record, specimen, circuit, line.frequency)
     tables = (_corrections(stages(loop)), _quantities(result), *_budgets(result))
-    facts = (*_of_the_file(line, record), *_of_the_period(loop))
+    facts = (*_of_the_file(line, record), *_of_the_period(loop), *_of_the_geometry(store, capture))
     return TraceBack(_sentence(result), facts, tables, tuple(filter(None, str(run["seen"].values).split("\n"))))
 
 
@@ -119,7 +122,9 @@ def _sentence(result: RunResult) -> str:
 
 
 def _shown(result: RunResult, name: str) -> str:
-    return with_uncertainty(result.values[name], result.uncertainties[name], shown_unit(QUANTITIES[name].unit))
+    unit = shown_unit(QUANTITIES[name].unit)
+    bounded = name in BOUNDED_AT_ZERO
+    return with_uncertainty(result.values[name], result.uncertainties[name], unit, bounded_at_zero=bounded)
 
 
 def _of_the_file(line: RunLine, record: Record) -> tuple[tuple[str, str], ...]:
@@ -146,6 +151,16 @@ def _of_the_period(loop: Loop) -> tuple[tuple[str, str], ...]:
         ("harmonics above the noise", f"{field} of the field, {induction} of the induction"),
         ("polarity", "turned round" if loop.harmonics.swapped else "as recorded"),
     )
+
+
+def _of_the_geometry(store: Store, capture: str) -> tuple[tuple[str, str], ...]:
+    """What the figures of the mean path leave out: the radial spread of H, and shielding of the strip."""
+    facts = []
+    for name, ask in (("across the ring", radial_bias_of), ("across the strip", penetration_of)):
+        # A circuit without diameters or thickness has nothing to say here.
+        with suppress(TheoryError):
+            facts.append((name, str(ask(store, capture))))
+    return tuple(facts)
 
 
 def _corrections(found: list[Stage]) -> Table:

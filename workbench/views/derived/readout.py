@@ -11,7 +11,7 @@ import numpy as np
 import xarray as xr
 
 from workbench.base.uncertainty import with_uncertainty
-from workbench.base.vocabulary import QUANTITIES, shown_unit
+from workbench.base.vocabulary import BOUNDED_AT_ZERO, QUANTITIES, shown_unit
 from workbench.quantities.mark_table import MARKS
 from workbench.views.derived.index import RunIndex
 from workbench.views.derived.loops import LoopFamily
@@ -89,7 +89,9 @@ def _column(index: RunIndex, choice: Choice, specimen: str) -> Column:
 def _figure(index: RunIndex, name: str, row: int) -> str:
     value, spread = float(index.values(name)[row]), float(index.values("u_" + name)[row])
     # A spread at the rounding of the machine says that none was stated, not that the figure is perfect.
-    return with_uncertainty(value, spread if spread > 1e-9 * abs(value) else math.nan)
+    return with_uncertainty(
+        value, spread if spread > 1e-9 * abs(value) else math.nan, bounded_at_zero=name in BOUNDED_AT_ZERO
+    )
 
 
 def _seen(text: str) -> dict[str, str]:
