@@ -58,9 +58,15 @@ def test_a_server_that_cannot_start_is_said(tmp_path: Path, monkeypatch: pytest.
 
 
 PARENT = """
+import signal
 import sys
 from pathlib import Path
 from workbench.write import lab
+
+# Whoever runs these tests with nohup or in the background has given us ignored signals.
+signal.signal(signal.SIGINT, signal.default_int_handler)
+if hasattr(signal, "SIGHUP"):
+    signal.signal(signal.SIGHUP, signal.SIG_DFL)
 
 child = "import os, time; print(os.getpid(), flush=True); time.sleep(60)"
 lab._command = lambda notebook, browser: [sys.executable, "-c", child]
@@ -75,6 +81,17 @@ def alive(pid: int) -> bool:
     except ProcessLookupError:
         return False
     return True
+
+
+@pytest.mark.skipif(not hasattr(signal, "SIGHUP"), reason="this system has no such signal")
+def test_what_was_started_with_nohup_keeps_on(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
+    stand_in(monkeypatch, "import os, signal; os.kill(os.getppid(), signal.SIGHUP); print('goes on')")
+    before = signal.signal(signal.SIGHUP, signal.SIG_IGN)
+    try:
+        lab.serve(tmp_path / "a.ipynb", lambda said: None)
+        assert signal.getsignal(signal.SIGHUP) is signal.SIG_IGN
+    finally:
+        signal.signal(signal.SIGHUP, before)
 
 
 @pytest.mark.skipif(sys.platform == "win32", reason="signals between processes are not those of POSIX")
