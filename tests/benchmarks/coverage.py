@@ -135,6 +135,25 @@ def held(deviations: np.ndarray) -> np.ndarray:
     return 100 * np.mean(np.abs(deviations) <= 1.96, axis=0)
 
 
+def summary(everything: list[Case], collected: list[np.ndarray]) -> None:
+    """A row a quantity, per cent over all captures and over each half of the study; as a Markdown table."""
+    halves = {
+        "winding": lambda c: c.sensor == "winding", "integrator": lambda c: c.sensor != "winding",
+        "50 Hz": lambda c: c.frequency < 1e3, "50 kHz": lambda c: c.frequency > 1e3,
+        "low δ": lambda c: c.loss == "low", "high δ": lambda c: c.loss == "high",
+        "3 cycles": lambda c: c.cycles < 5, "20 cycles": lambda c: c.cycles > 5,
+        "sheet": lambda c: c.source == "sheet", "noise": lambda c: c.source == "noise",
+    }  # fmt: skip
+    print("\n| quantity | all |", " | ".join(halves), "|\n|---|" + "---|" * (len(halves) + 1))
+    columns = [held(np.concatenate(collected))]
+    for chosen in halves.values():
+        rows = [deviations for case, deviations in zip(everything, collected, strict=True) if chosen(case)]
+        columns.append(held(np.concatenate(rows)))
+    for name, values in zip(QUANTITIES, np.array(columns).T, strict=True):
+        print(f"| `{name}` |", " | ".join(f"{value:.1f}" for value in values), "|")
+    print()
+
+
 def main(captures: int = 130, seed: int = 1) -> None:
     """Print the table."""
     everything = list(cases())
@@ -150,6 +169,7 @@ def main(captures: int = 130, seed: int = 1) -> None:
             print(head, *(f"{value:9.1f}" for value in held(deviations)))
     together = np.concatenate(collected)
     print(f"{f'all, {len(together)} captures':46}", *(f"{value:9.1f}" for value in held(together)))
+    summary(everything, collected)
     mean, spread = together.mean(axis=0), together.std(axis=0)
     print(f"{'mean of deviation/u':46}", *(f"{value:9.2f}" for value in mean))
     print(f"{'spread of deviation/u':46}", *(f"{value:9.2f}" for value in spread))
