@@ -10,14 +10,14 @@ import os
 import signal
 import sys
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager, suppress
+from contextlib import contextmanager
 from functools import wraps
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
-from workbench.base.errors import Finding, SheetError, WorkbenchError
+from workbench.base.errors import WorkbenchError
 from workbench.write.plain import aligned, printable
 
 if TYPE_CHECKING:
@@ -149,12 +149,13 @@ def table_command(
     """Show the runs of a store, one row a run, values with U (k = 2)."""
     from workbench.store.open import open_store
     from workbench.write.table import table_head, table_rows, write_csv
+    from workbench.write.terminal import ruled
 
     runs = open_store(path).runs
     if csv:
         write_csv(runs, sys.stdout)
     elif sys.stdout.isatty():
-        _pretty(table_head(runs), table_rows(runs))
+        ruled(table_head(runs), table_rows(runs))
     else:
         print("\n".join(aligned(table_head(runs), table_rows(runs))))
     return ALL_WELL
@@ -225,18 +226,17 @@ def handoff_command(
     peak_induction: Annotated[list[str] | None, typer.Option(help='"1 T" or 1; may be repeated.')] = None,
 ) -> int:
     """Write a folder that a colleague opens without this program: notebook, netCDF, sheet, SHA-256."""
-    settings = {
-        name: _settings(name, texts)
-        for name, texts in [
-            ("frequency", frequency),
-            ("temperature", temperature),
-            ("peak_field", peak_field),
-            ("peak_induction", peak_induction),
-        ]
-    }
     from workbench.store.open import open_store
+    from workbench.write.choice import settings_of
     from workbench.write.handoff import hand_off
 
+    typed = {
+        "frequency": frequency,
+        "temperature": temperature,
+        "peak_field": peak_field,
+        "peak_induction": peak_induction,
+    }
+    settings = {name: settings_of(name, texts) for name, texts in typed.items() if texts}
     folder = hand_off(open_store(path), to, specimen=specimen or None, **settings)
     _say(f"wrote {_shown(folder)}: {', '.join(sorted(each.name for each in folder.iterdir()))}")
     _say(f"Whoever gets it can check it: workbench verify {_shown(folder)}, or sha256sum --check SHA256SUMS")
@@ -296,36 +296,3 @@ def _beside(folder: Path) -> Path:
 def _shown(path: Path) -> str:
     absolute = Path(os.path.abspath(path))
     return str(absolute.relative_to(Path.cwd())) if absolute.is_relative_to(Path.cwd()) else str(absolute)
-
-
-def _settings(name: str, texts: list[str] | None) -> list[float] | None:
-    from workbench.base.errors import QuantityError
-    from workbench.base.measured import parse_quantity
-    from workbench.base.vocabulary import SETTINGS
-
-    values, findings = [], []
-    for text in texts or []:
-        with suppress(ValueError):
-            values.append(float(text))
-            continue
-        try:
-            values.append(parse_quantity(text, SETTINGS[name].unit).value)
-        except QuantityError as error:
-            findings.append(Finding(f"--{name.replace('_', '-')}", error.wanted, error.found))
-    if findings:
-        raise SheetError("Reading the command line", findings)
-    return values or None
-
-
-def _pretty(head: list[str], rows: list[list[str]]) -> None:
-    from rich.console import Console
-    from rich.table import Table
-    from rich.text import Text
-
-    table = Table()
-    for cell in head:
-        table.add_column(Text(cell))
-    for row in rows:
-        # As Text, so that "[red]" in a name stays those letters.
-        table.add_row(*(Text(printable(cell)) for cell in row))
-    Console().print(table)

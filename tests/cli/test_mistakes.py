@@ -16,6 +16,7 @@ import pytest
 from typer.testing import CliRunner
 
 from workbench import cli
+from workbench.write.terminal import ruled
 
 Run = Callable[..., "subprocess.CompletedProcess[str]"]
 HOSTILE = "[red]<img src=x onerror=alert(1)>"
@@ -40,7 +41,7 @@ HOSTILE = "[red]<img src=x onerror=alert(1)>"
         (["take-back", "bench.store", "no-such.csv"], "no-such.csv"),
         (["handoff", "bench.store"], "--to"),
         (["handoff", "bench.store", "--to", "out", "--frequency", "400 hertzz"], "hertzz"),
-        (["handoff", "bench.store", "--to", "out", "--frequency", "400 T"], "--frequency"),
+        (["handoff", "bench.store", "--to", "out", "--frequency", "400 T"], "frequency: wanted"),
         (["handoff", "bench.store", "--to", "out", "--specimen", "nobody"], "nobody"),
         (["verify", "bench"], "SHA256SUMS"),
         (["verify", "nowhere"], "nowhere"),
@@ -86,7 +87,7 @@ def test_a_name_from_the_sheet_stays_letters(workbench: Run, campaign: Path) -> 
 
 
 def test_hostile_text_on_a_terminal_is_letters_too(capsys: pytest.CaptureFixture[str]) -> None:
-    cli._pretty(["specimen"], [[HOSTILE], ["a\x1b[31mb"]])
+    ruled(["specimen"], [[HOSTILE], ["a\x1b[31mb"]])
     shown = capsys.readouterr().out
     assert HOSTILE in shown
     assert "\x1b" not in shown

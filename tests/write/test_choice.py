@@ -6,7 +6,7 @@ import pytest
 import xarray as xr
 
 from workbench.base.errors import HandoffError
-from workbench.write.choice import Choice, chosen
+from workbench.write.choice import Choice, chosen, settings_of
 
 
 def test_everything_kept_is_the_default(runs: xr.Dataset) -> None:
@@ -45,3 +45,13 @@ def test_what_no_run_has_is_said(runs: xr.Dataset, choice: Choice, words: list[s
 def test_a_choice_of_only_set_aside_runs_is_no_choice(runs: xr.Dataset, hostile: str) -> None:
     with pytest.raises(HandoffError, match="found no kept run"):
         chosen(runs, Choice(specimen=[hostile], peak_field=[100.0], frequency=[400.0]))
+
+
+def test_settings_from_text_are_in_the_unit_of_the_setting() -> None:
+    assert settings_of("temperature", ["-40 degC", "-40", "1e2"]) == [-40.0, -40.0, 100.0]
+    assert settings_of("peak_field", ["0.1 kA/m"]) == [100.0]
+
+
+def test_every_wrong_setting_is_named() -> None:
+    with pytest.raises(HandoffError, match=r"'400 hertzz'.*'nan Hz'"):
+        settings_of("frequency", ["400 hertzz", "nan", "50"])

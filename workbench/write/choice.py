@@ -8,7 +8,8 @@ from dataclasses import dataclass, fields
 import numpy as np
 import xarray as xr
 
-from workbench.base.errors import HandoffError, nearest
+from workbench.base.errors import HandoffError, QuantityError, nearest
+from workbench.base.measured import parse_quantity
 from workbench.base.vocabulary import SETTINGS, shown_unit
 
 # Settings come from text: 0.1 kHz and 100 Hz may differ in the last digit of a double.
@@ -55,6 +56,38 @@ def chosen(runs: xr.Dataset, choice: Choice) -> xr.Dataset:
             "Ask for fewer conditions at once, or take runs back."
         )
     return runs.isel(run=np.flatnonzero(keep))
+
+
+def settings_of(name: str, texts: Sequence[str]) -> list[float]:
+    """Settings from text: "0.4 kHz", or a number in the setting's own unit, "400".
+
+    Raises
+    ------
+    HandoffError    with every text that is no such setting
+
+    Examples
+    --------
+    >>> settings_of("frequency", ["0.4 kHz", "50"])
+    [400.0, 50.0]
+    """
+    values, wrong = [], []
+    for text in texts:
+        try:
+            unit = SETTINGS[name].unit
+            values.append(parse_quantity(f"{text} {unit}" if _is_number(text) else text, unit).value)
+        except QuantityError as error:
+            wrong.append(f"wanted {error.wanted}; found {error.found}")
+    if wrong:
+        raise HandoffError(f"Choosing runs for a hand-off, {name.replace('_', '-')}: {'; '.join(wrong)}.")
+    return values
+
+
+def _is_number(text: str) -> bool:
+    try:
+        float(text)
+    except ValueError:
+        return False
+    return True
 
 
 def _matches(name: str, have: np.ndarray, wanted: Sequence[str] | Sequence[float]) -> np.ndarray:
