@@ -99,7 +99,7 @@ def write_captures(folder: Path, rings: tuple[str, ...] = tuple(RINGS), at_most:
                 group.attrs["sample_rate"] = timing.sample_rate
                 for name, samples in zip(("field", "induction"), channels, strict=True):
                     cut = name == "induction" and _is(line, TRUNCATED)
-                    _write_channel(group, name, samples, SAMPLES // 3 if cut else SAMPLES)
+                    write_channel(group, name, samples, SAMPLES // 3 if cut else SAMPLES)
 
 
 def truth(campaign: Campaign, ring: str) -> tuple[Specimen, Circuit]:
@@ -135,7 +135,7 @@ def _is(line: RunLine, setting: tuple[str, int, int, int]) -> bool:
     return (line.specimen, line.frequency, line.temperature, line.peak_field) == setting
 
 
-def _write_channel(group: h5py.Group, name: str, samples: Samples, count: int) -> None:
+def write_channel(group: h5py.Group, name: str, samples: Samples, count: int) -> None:
     assert samples.codes is not None
     data = group.create_dataset(name, data=samples.codes[:count].astype(np.int16))
     data.attrs["units"] = "V"

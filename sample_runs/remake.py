@@ -11,6 +11,7 @@ import sys
 from pathlib import Path
 
 import make_bench
+import make_kinds
 import make_rings
 
 HERE = Path(__file__).resolve().parent
@@ -27,8 +28,8 @@ def campaign_folder(into: Path, name: str) -> Path:
 
 
 def main(into: Path) -> None:
-    """Both campaigns into `into`."""
-    for name, maker in (("rings_autumn", make_rings), ("one_ring_bench", make_bench)):
+    """All campaigns into `into`."""
+    for name, maker in (("rings_autumn", make_rings), ("one_ring_bench", make_bench), ("ring_kinds", make_kinds)):
         folder = campaign_folder(into, name)
         maker.write_runs(folder)
         maker.write_captures(folder)

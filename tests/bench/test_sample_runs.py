@@ -9,10 +9,13 @@ import numpy as np
 import pytest
 
 from workbench.capture.read import read_campaign
+from workbench.quantities.mark_table import marks_of
+from workbench.store.reduce import reduce
 
 SAMPLE_RUNS = Path(__file__).resolve().parents[2] / "sample_runs"
 RINGS = SAMPLE_RUNS / "rings_autumn"
 BENCH = SAMPLE_RUNS / "one_ring_bench"
+KINDS = SAMPLE_RUNS / "ring_kinds"
 
 
 @pytest.fixture
@@ -24,7 +27,7 @@ def remake(monkeypatch):
     import remake
 
     yield remake, make_rings, make_bench
-    for name in ("remake", "make_rings", "make_bench", "invented_alloys", "ranges"):
+    for name in ("remake", "make_rings", "make_bench", "make_kinds", "thick_ring", "invented_alloys", "ranges"):
         sys.modules.pop(name, None)
 
 
@@ -58,6 +61,38 @@ def test_bench_is_remade_to_the_same_bytes(remake, tmp_path):
     assert [path.name for path in made] == ["step-01.csv", "step-02.csv"]
     for path in [*made, folder / "runs.csv"]:
         assert path.read_bytes() == (BENCH / path.relative_to(folder)).read_bytes()
+
+
+def test_kinds_are_remade_to_the_same_bytes(remake, tmp_path):
+    """Texts byte by byte; of HDF5 and NPZ the arrays, since their envelope is the library's."""
+    import make_kinds
+
+    folder = remake[0].campaign_folder(tmp_path, "ring_kinds")
+    make_kinds.write_runs(folder)
+    make_kinds.write_captures(folder)
+    files = sorted(path.relative_to(folder) for path in folder.rglob("*") if path.is_file())
+    assert files == sorted(path.relative_to(KINDS) for path in KINDS.rglob("*") if path.is_file())
+    for name in files:
+        if name.suffix == ".npz":
+            assert arrays(folder / name) == arrays(KINDS / name)
+        elif name.suffix == ".h5":
+            assert groups(folder / name) == groups(KINDS / name)
+        else:
+            assert (folder / name).read_bytes() == (KINDS / name).read_bytes()
+
+
+def arrays(path):
+    with np.load(path) as file:
+        return {name: (file[name].dtype, file[name].tobytes()) for name in file}
+
+
+def groups(path):
+    with h5py.File(path) as file:
+        return {
+            (name, channel): (values.dtype, values.tobytes(), dict(file[name].attrs), dict(file[name][channel].attrs))
+            for name in file
+            for channel, values in codes(file[name]).items()
+        }
 
 
 def test_ranges_go_in_steps_of_one_two_five(remake):
@@ -128,3 +163,20 @@ def test_one_ring_is_noisier():
         return np.std(np.diff(voltage, 4)) / np.sqrt(70)
 
     assert grain("R63a") > 4 * max(grain(ring) for ring in ("R41a", "R41b", "R52a", "R52b", "R74a"))
+
+
+def test_kinds_reduce_without_failures_and_with_the_marks_of_the_note(tmp_path):
+    campaign = read_campaign(KINDS)
+    assert {line.kind for line in campaign.runs} == {"loop", "air", "trace", "initial"}
+    assert campaign.specimens["T81"].diameter_ratio <= 1.1
+    assert campaign.specimens["T82"].diameter_ratio == pytest.approx(1.6)
+    assert sum(path.stat().st_size for path in KINDS.rglob("*") if path.is_file()) < 1.5e6
+    store = reduce(campaign, tmp_path / "kinds.store", progress=False)
+    assert store.failures.empty
+    runs = store.runs
+    assert runs.sizes["run"] == len(campaign.runs)
+    for bits, specimen, frequency, kind in zip(
+        *(runs[name].values for name in ("marks", "specimen", "frequency", "kind")), strict=True
+    ):
+        one_cycle = ("few cycles",) if kind == "loop" and frequency < 1 else ()
+        assert marks_of(int(bits)) == (("thick ring",) if specimen == "T82" else one_cycle)

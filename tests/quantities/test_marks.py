@@ -97,6 +97,20 @@ def test_open_loop() -> None:
     assert marks(record(field, induction + 0.1)) == ()
 
 
+@pytest.mark.parametrize(("drift", "said"), [(0.0, False), (0.004, True), (0.03, False)])
+def test_a_repaired_closure_is_said(drift: float, said: bool) -> None:
+    """One cycle recorded in T that drifts by 0.4 % of B̂: no mark, but a word; by 3 % the mark says it."""
+    angle = 2 * np.pi * np.arange(2000) / 2000
+    induction = np.sin(angle) + drift * angle / (2 * np.pi)
+    captured = Record(100 * np.sin(angle + 0.3), induction, "A/m", "T", 1e5, "")
+    result = reduce_record(captured, LINE, RING, BENCH, {})
+    assert ("closure" in result.seen) is said
+    assert ("open loop" in result.marks) is (drift > 0.01)
+    assert result.values["loss_per_cycle"] == pytest.approx(math.pi * 100 * math.sin(0.3), rel=1e-4)
+    if said:
+        assert "0.40% of B̂" in result.seen["closure"]
+
+
 def test_biased() -> None:
     """A second harmonic of H, as a direct current in the primary leaves it."""
     angle, field, induction = wave()

@@ -26,6 +26,8 @@ _POINTS_KEPT = 512
 """Samples a cycle to which a denser record is averaged down before it is folded."""
 _ONE_CYCLE = 1.1
 """Up to here a record is taken as one cycle whose ends are brought together."""
+_HIGHEST_POWER = 5
+"""Of the curve through the ends of a one-cycle record."""
 _SEARCH_POINTS = 160
 """Samples a cycle that suffice to find the period."""
 _LEAST_SQUARES_BELOW = 6
@@ -178,12 +180,14 @@ def _ends_joined(samples: Floats) -> tuple[Floats, Floats, float]:
     """
     count = samples.shape[1]
     few = max(4, count // 100)
-    # End and beginning side by side follow one parabola but for the step between them.
+    # End and beginning side by side follow one curve but for the step between them.  A parabola would
+    # not do: where a record begins near a sharp tip in saturation, its third order looks like a step.
     side_by_side = np.concatenate([samples[:, -few:], samples[:, :few]], axis=1)
     place = (np.arange(-few, few) + 0.5) / few
-    design = np.stack([np.ones(2 * few), place, place**2, place > 0], axis=1)
-    gap = -np.linalg.lstsq(design, side_by_side.T, rcond=None)[0][3]
-    noise = float(np.sqrt(np.linalg.inv(design.T @ design)[3, 3]))
+    powers = np.vander(place, min(_HIGHEST_POWER, few // 2) + 1, increasing=True)
+    design = np.concatenate([powers, place[:, None] > 0], axis=1)
+    gap = -np.linalg.lstsq(design, side_by_side.T, rcond=None)[0][-1]
+    noise = float(np.sqrt(np.linalg.inv(design.T @ design)[-1, -1]))
     return samples - gap[:, None] * ((np.arange(count) + 0.5) / count - 0.5), gap, noise
 
 

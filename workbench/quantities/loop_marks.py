@@ -18,6 +18,8 @@ _DISTORTION_LIMIT = 0.05
 """Of the secondary's voltage: a form factor alone is blind to a third harmonic in quadrature."""
 _CHANCE = 4.0
 """Standard uncertainties that noise alone may explain."""
+_WORTH_SAYING = 1e-4
+"""Of B̂: a smaller step between the ends of one cycle shows in no figure."""
 
 Limits = dict[str, float]
 Seen = dict[str, str]
@@ -46,6 +48,8 @@ def _steadiness(loop: Loop, figures: Figures, limit: Limits) -> Seen:
     gap = closure(loop) / figures.values["induction_tip"]
     if gap > limit["open loop"]:
         seen["open loop"] = f"B misses its beginning by {gap:.1%} of B̂ after a cycle"
+    elif gap > _WORTH_SAYING and abs(loop.waveform.end_gap[1]) > _CHANCE * loop.waveform.gap_noise[1]:
+        seen["closure"] = f"B missed its beginning by {gap:.2%} of B̂; a straight line over the cycle was taken off"
     return seen
 
 
