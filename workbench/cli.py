@@ -23,6 +23,10 @@ from workbench.write.plain import aligned, printable
 if TYPE_CHECKING:
     from workbench.store.open import Store
 
+# Before numpy is loaded: its matrices are small here, and threads would only get in each other's way
+# beside several processes.
+os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
+
 ALL_WELL, SOME_FAILED, NOTHING_DONE = 0, 1, 2
 _CATALOG = "catalog.sqlite"
 
