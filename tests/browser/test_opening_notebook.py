@@ -27,7 +27,8 @@ def test_three_panes_are_drawn_and_follow_a_slider(page):
     before = [figures.nth(place).inner_html() for place in range(3)]
     assert all('class="line' in picture for picture in before)
     page.locator(".wb-controls .noUi-handle").first.focus()
-    page.keyboard.press("ArrowLeft")
+    for _ in range(5):  # as far as another run is the nearest
+        page.keyboard.press("ArrowLeft")
     page.wait_for_timeout(700)
     after = [figures.nth(place).inner_html() for place in range(3)]
     assert [old != new for old, new in zip(before, after, strict=True)] == [True, True, True]

@@ -54,10 +54,12 @@ def test_three_panes_are_drawn(page):
 def test_a_slider_moved_by_keyboard_moves_all_three(page):
     before = drawn(page)
     page.locator(".wb-controls .noUi-handle").first.focus()
-    page.keyboard.press("ArrowRight")
+    for _ in range(3):  # as far as another run is the nearest
+        page.keyboard.press("ArrowRight")
     settle(page)
     assert changed_panes(page, before) == list(PANES)
-    assert "160 A/m" in status(page)
+    assert "B̂ 0.8 T" in status(page)
+    assert "Least loss at B̂ 0.8 T" in page.locator(".wb-least").inner_text()
 
 
 def test_a_tile_clicked_moves_all_three(page):
@@ -66,7 +68,7 @@ def test_a_tile_clicked_moves_all_three(page):
     page.mouse.click(box["x"] + box["width"] / 2, box["y"] + box["height"] / 2)
     settle(page)
     assert changed_panes(page, before) == list(PANES)
-    assert "80 A/m, 50 Hz" not in status(page)
+    assert "First view" not in status(page)
 
 
 @pytest.mark.parametrize("pane", [0, 1])
@@ -77,7 +79,7 @@ def test_a_dot_clicked_moves_all_three(page, pane):
     page.mouse.click(target["x"] + target["width"] / 2, target["y"] + target["height"] / 2)
     settle(page)
     assert changed_panes(page, before) == list(PANES)
-    assert "80 A/m, 50 Hz" not in status(page)
+    assert "First view" not in status(page)
     assert page.evaluate("document.activeElement.tagName") == "SELECT", "the keys must not stay with the notebook"
 
 

@@ -15,6 +15,7 @@ import xarray as xr
 
 from workbench.base.vocabulary import QUANTITIES
 from workbench.quantities.mark_table import mark_bits
+from workbench.quantities.result import SOURCES
 
 HOSTILE = "<img src=x onerror=document.title='pwned'>"
 PHASE = 2 * np.pi * np.arange(512) / 512
@@ -121,6 +122,12 @@ def _dataset(keys: list, lines: list) -> xr.Dataset:
     variables |= {"u_" + name: ("run", 0.01 * np.abs(values)) for name, values in data.items()}
     variables["field"] = (("run", "phase"), np.array([line["field"] for line in lines], np.float32))
     variables["induction"] = (("run", "phase"), np.array([line["induction"] for line in lines], np.float32))
+    names = list(QUANTITIES)
+    budget = np.zeros((count, len(names), len(SOURCES)), np.float32)
+    for source in ("area", "scatter"):
+        budget[:, :, SOURCES.index(source)] = np.array([0.01 / 2**0.5 * np.abs(data[name]) for name in names]).T
+    variables["budget"] = (("run", "quantity", "source"), np.nan_to_num(budget))
+    coords |= {"quantity": names, "source": list(SOURCES)}
     coords |= {name: ("run", values) for name, values in texts.items()}
     coords |= {"marks": ("run", marks), "repeat": ("run", np.ones(count, int)), "phase": PHASE}
     return xr.Dataset(variables, coords)

@@ -23,7 +23,7 @@ PHASE = 2 * np.pi * np.arange(512) / 512
 
 @pytest.fixture
 def choice(index):
-    return replace(start(index), peak=160.0, frequency=400.0)
+    return replace(start(index), hold="peak", peak=160.0, frequency=400.0)
 
 
 # loops
@@ -247,7 +247,7 @@ def test_status_of_an_empty_choice(index, choice):
 
 def test_slice_in_view_is_the_loops_drawn(index, choice):
     family = loop_family(index, choice)
-    view = slice_in_view(index, choice, family)
+    view = slice_in_view(index, family)
     assert view.sizes["run"] == len(PEAKS) + 3
     assert set(view.specimen.values) == set(choice.specimens)
 

@@ -38,14 +38,22 @@ def test_start_takes_one_ring_of_each_alloy_near_room_temperature(index):
     assert settled(index, begun) == begun
 
 
-def test_start_takes_the_peak_that_reaches_about_one_tesla(index):
+def test_start_holds_one_tesla_or_the_round_value_that_all_reach():
+    """One ring saturates below 1 T: all but it start at 1 T, with it at 0.5 T."""
+    begun = start(run_index(closed_form_store(hostile=False)))
+    assert (begun.hold, begun.induction) == ("induction", 1.0)
+    assert start(run_index(closed_form_store())).induction == 0.5
+
+
+def test_with_the_induction_held_the_peak_follows():
+    index = run_index(closed_form_store(hostile=False))
     begun = start(index)
     tips = [index.values("induction_tip")[index.row("R41a", peak, 50.0, 23.0)] for peak in index.ladder("R41a")[0]]
     assert begun.peak == min(zip(tips, index.ladder("R41a")[0], strict=True), key=lambda each: abs(each[0] - 1))[1]
 
 
 def test_settings_snap_by_ratio_to_the_ladder(index):
-    fit = settled(index, replace(start(index), peak=100.0, frequency=2000.0, temperature=60.0))
+    fit = settled(index, replace(start(index), hold="peak", peak=100.0, frequency=2000.0, temperature=60.0))
     assert (fit.peak, fit.frequency, fit.temperature) == (80.0, 1000.0, 23.0)
     assert fit.peak in PEAKS
     assert fit.frequency in FREQUENCIES
@@ -76,3 +84,13 @@ def test_a_store_without_loops_starts_empty():
     begun = start(run_index(store))
     assert begun.specimens == ()
     assert asdict(begun)["peak"] is None
+
+
+def test_a_peak_chosen_while_the_induction_is_held_holds_what_its_run_reaches(index):
+    begun = start(index)
+    stepped = settled(index, replace(begun, peak=160.0), begun)
+    tip = index.values("induction_tip")[index.row("R41a", 160.0, 50.0, 23.0)]
+    assert (stepped.peak, stepped.induction) == (160.0, tip)
+    other = settled(index, replace(stepped, front="R52a"), stepped)
+    assert other.induction == tip
+    assert other.peak != 160.0, "another alloy reaches it elsewhere on its ladder"

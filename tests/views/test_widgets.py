@@ -176,6 +176,7 @@ def test_a_failure_is_said_and_the_last_choice_comes_back(bench, monkeypatch):
 
 
 def test_a_new_revision_of_the_store_is_drawn(bench):
+    bench.selection.hold = "peak"
     bench.store.runs["standing"].values[bench.page.loops.chosen.row] = "set aside"
     bench.store.revision += 1
     bench.render()

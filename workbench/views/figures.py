@@ -83,7 +83,7 @@ def fallback(made: Page, glance: Overview) -> str:
     return (
         f"<div><b>{escape(glance.title)}</b> {escape(glance.line)}</div>"
         f'<img src="data:image/svg+xml;base64,{code}" alt="{escape(said)}" style="max-width:100%;background:#fff">'
-        f"<p>{escape(made.status)}</p>{markup.readout_table(made.readout)}"
+        f"<p>{escape(made.status)}</p>{markup.least_loss(made.least)}{markup.readout_table(made.readout)}"
     )
 
 
@@ -122,8 +122,9 @@ def _draw_permeability(axes: Axes, shown: PermeabilityCurves) -> None:
         style: Any = _DASHES[curve.look.dash]
         axes.plot(curve.x, curve.y, color=curve.look.colour, linestyle=style, linewidth=1.2, marker="o", markersize=3)
         axes.scatter(curve.x[curve.doubtful], curve.y[curve.doubtful], **_SIGN)
+    if shown.held is not None:
+        axes.axvline(shown.held, color="#888888", linewidth=0.8, linestyle="--")
     if shown.chosen is not None:
-        axes.axvline(shown.chosen[0], color="#888888", linewidth=0.8, linestyle="--")
         axes.plot(*shown.chosen, "o", markersize=9, fillstyle="none", color=shown.front_colour)
     _frame(axes, shown.x_axis, shown.y_axis, (shown.x_label, shown.y_label), f"Permeability  {shown.title}")
 

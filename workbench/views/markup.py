@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from html import escape
 
 from workbench.views.colours import HOLE, SVG_DASHES, Look, map_colours
+from workbench.views.derived.least import LeastLoss
 from workbench.views.derived.lossmap import LossMap
 from workbench.views.derived.overview import Overview
 from workbench.views.derived.readout import Column, Readout
@@ -113,6 +114,23 @@ def log(traceback: str) -> str:
     return f'<details class="wb-log">{summary}<pre>{escape(traceback)}</pre></details>' if traceback else ""
 
 
+def least_loss(shown: LeastLoss) -> str:
+    """The order of loss at the held state: those that cannot be told apart are bracketed."""
+    parts: list[str] = []
+    for number, place in enumerate(shown.places, 1):
+        sign = f" {DOUBT_SIGN}" if place.doubtful else ""
+        alloy = f" {escape(place.alloy)}" if number == 1 and place.alloy != place.specimen else ""
+        one = f"<b>{number} {escape(place.specimen)}</b>{alloy} {escape(place.said)}{sign}"
+        if place.tied:
+            parts[-1] += f" · {one}"
+        else:
+            parts.append(one)
+    parts = [f"[ {part} ] <i>cannot tell</i>" if " · <b>" in part else part for part in parts]
+    parts += [f"{escape(name)} {escape(why)}" for name, why in shown.out]
+    order = "".join(f"<span>{part}</span>" for part in parts)
+    return f'<div class="wb-least"><span>Least loss at {escape(shown.state)}:</span>{order}</div>'
+
+
 def readout_table(table: Readout) -> str:
     """The figures of the chosen setting as a plain table."""
     heads = "".join(_head(column) for column in table.columns)
@@ -153,6 +171,7 @@ def _figure(text: str) -> str:
 
 def _words(columns: Sequence[Column]) -> list[tuple[str, list[str]]]:
     return [
+        ("figures read", [escape(column.between) for column in columns]),
         ("doubts", [_lines(column.doubts, f"{DOUBT_SIGN} ") for column in columns]),
         ("notes", [_lines(column.notes) for column in columns]),
         ("standing", [escape(column.standing) for column in columns]),

@@ -11,6 +11,9 @@ import traitlets
 ALONG = ("peak", "frequency", "temperature", "specimen")
 """The axes along which there can be one loop each."""
 
+HOLDS = ("peak", "induction")
+"""What is held when specimens are compared: the peak that was set, or the induction that is reached."""
+
 FITS = ("opening", "all runs", "chosen loop")
 """What the axes of the loops are made to fit."""
 
@@ -27,6 +30,10 @@ class Choice:
     """Hz"""
     temperature: float | None = None
     """degC; None where the campaign gives none."""
+    hold: str = HOLDS[0]
+    """With "induction" the peak follows: it is that of the run in front nearest to the held induction."""
+    induction: float | None = None
+    """Tip of induction held, T."""
     along: str = "peak"
     quantity: str = ""
     """Of the map."""
@@ -54,6 +61,8 @@ class Selection(traitlets.HasTraits):
     peak = traitlets.Float(None, allow_none=True)
     frequency = traitlets.Float(None, allow_none=True)
     temperature = traitlets.Float(None, allow_none=True)
+    hold = traitlets.Enum(HOLDS, default_value=HOLDS[0])
+    induction = traitlets.Float(None, allow_none=True)
     along = traitlets.Enum(ALONG, default_value="peak")
     quantity = traitlets.Unicode("")
     fit = traitlets.Enum(FITS, default_value=FITS[0])

@@ -64,8 +64,8 @@ class StoreLike(Protocol):
 class RunIndex:
     """The loop runs of a store on their four axes, and their figures as arrays over all runs."""
 
-    token: Hashable
-    """Equal tokens, equal contents."""
+    token: tuple[int, bool]
+    """Revision of the store, and whether runs set aside are shown: equal tokens, equal contents."""
     title: str
     runs: xr.Dataset
     specimens: tuple[str, ...]
@@ -118,11 +118,20 @@ class RunIndex:
 
     def text_at(self, name: str, row: int) -> str:
         """A coordinate of one run as text; empty where the store does not have it."""
+        return str(self.column(name)[row])
+
+    def column(self, name: str) -> npt.NDArray[Any]:
+        """A coordinate over all runs, (run,); empty texts where the store does not have it."""
         known = self._texts.get(name)
         if known is None:
             found = self.runs[name].values if name in self.runs.coords else np.full(self.runs.sizes["run"], "")
             known = self._texts[name] = np.asarray(found)
-        return str(known[row])
+        return known
+
+    @property
+    def shows_set_aside(self) -> bool:
+        """Whether runs set aside count as runs to show."""
+        return self.token[1]
 
     def marks(self, row: int) -> tuple[str, ...]:
         """Names of the marks of a run."""
@@ -174,6 +183,25 @@ class RunIndex:
         """Row of the run at a setting, -1 where there is none to show."""
         at = self._at(specimen, peak, frequency, temperature)
         return -1 if at is None else int(self.rows[at])
+
+    def ladder_rows(self, specimen: str, frequency: float | None, temperature: float | None) -> Rows:
+        """Rows to show along one ladder, in the order of the peaks set."""
+        places = (self._places[0].get(specimen, -1), self._places[2].get(frequency, -1))
+        place = self._places[3].get(temperature, -1)
+        if -1 in (*places, place):
+            return np.empty(0, np.int32)
+        rows = self.rows[places[0], :, places[1], place]
+        return np.asarray(rows[rows >= 0])
+
+    def peak_of(self, row: int) -> float | None:
+        """Peak that was set for a run; None where none was given."""
+        value = float(self.column(self.peak_name)[row])
+        return None if math.isnan(value) else value
+
+    @cached_property
+    def budget(self) -> npt.NDArray[Any]:
+        """(run, quantity, source) signed shares of the standard uncertainty."""
+        return np.asarray(self.runs["budget"].values)
 
     def why_not(self, specimen: str, peak: float | None, frequency: float | None, temperature: float | None) -> str:
         """In words, why there is no run to show at a setting."""

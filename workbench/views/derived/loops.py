@@ -13,6 +13,7 @@ import numpy.typing as npt
 from workbench.base.uncertainty import with_uncertainty
 from workbench.base.vocabulary import QUANTITIES
 from workbench.views.colours import Look, alloy_looks, strengths
+from workbench.views.derived.held import held_row, held_words
 from workbench.views.derived.index import RunIndex, spelled
 from workbench.views.derived.thinning import Drawn, thinned
 from workbench.views.derived.ticks import AxisPlan, finite_range, round_up, symmetric_axis
@@ -58,6 +59,7 @@ class LoopFamily:
     """(tip,)"""
     tip_induction: Drawn
     tip_colours: tuple[str, ...]
+    tip_rows: tuple[int, ...]
     tip_doubtful: npt.NDArray[np.bool_]
     tip_choices: tuple[dict[str, Any], ...]
     """What to choose where a tip is clicked."""
@@ -81,7 +83,7 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
     """The family of loops along the chosen axis, with the loop of the held setting on top."""
     looks = alloy_looks(index.alloy_names)
     steps = _steps(index, choice)
-    members = [(each, index.row(each.front, each.peak, each.frequency, each.temperature)) for each in steps]
+    members = [(each, _row(index, each)) for each in steps]
     members = [(each, row) for each, row in members if row >= 0]
     factor, unit = _field_unit(index, choice)
     largest_field, largest_induction = _frame(index, choice, [row for _, row in members])
@@ -93,9 +95,8 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
     front = looks[index.alloy_of(choice.front)]
     chosen = _curve(index, choice, choice.front, factor, looks)
     beside = (_curve(index, choice, name, factor, looks) for name in choice.specimens if name != choice.front)
-    free: dict[str, Any] = {"front": ""} if choice.along == "specimen" else {choice.along: None}
     return LoopFamily(
-        key=(index.token, "loops", replace(choice, quantity="", fit="", **free)),
+        key=(index.token, "loops", _still(choice)),
         chosen_key=(index.token, replace(choice, quantity="")),
         title=_title(index, choice),
         field_axis=symmetric_axis(largest_field / factor),
@@ -108,6 +109,7 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
         tip_field=(index.values("field_tip")[rows] / factor).astype(np.float32),
         tip_induction=index.values("induction_tip")[rows].astype(np.float32),
         tip_colours=tuple(looks[index.alloy_of(each.front)].colour for each, _ in kept) or (front.colour,),
+        tip_rows=tuple(rows.tolist()),
         tip_doubtful=index.doubtful[rows],
         tip_choices=tuple(_click(each, choice.along) for each, _ in kept),
         tip_names=names,
@@ -119,6 +121,23 @@ def loop_family(index: RunIndex, choice: Choice) -> LoopFamily:
         points=_points(index, chosen, factor),
         summary=_summary(index, choice, chosen, len(kept), left_out),
     )
+
+
+def _row(index: RunIndex, step: Choice) -> int:
+    """The run of one step: with the induction held each ladder has its own peak, unless the peaks are stepped."""
+    if step.along == "peak":
+        return index.row(step.front, step.peak, step.frequency, step.temperature)
+    return held_row(index, step, step.front)
+
+
+def _still(choice: Choice) -> Choice:
+    """The choice without what may change while the family stays."""
+    free: dict[str, Any] = {"front": ""} if choice.along == "specimen" else {choice.along: None}
+    if choice.hold == "induction":
+        free["peak"] = None
+    if choice.hold != "induction" or choice.along == "peak":
+        free |= {"induction": None, "hold": ""}
+    return replace(choice, quantity="", fit="", **free)
 
 
 def _steps(index: RunIndex, choice: Choice) -> list[Choice]:
@@ -154,12 +173,11 @@ def _frame(index: RunIndex, choice: Choice, family: list[int]) -> tuple[float, f
     moves the axes.  `opening` narrows the field to where the family is open: a soft alloy driven
     far beyond its knee would else be a vertical stroke.
     """
-    held = (choice.peak, choice.frequency, choice.temperature)
-    one = index.row(choice.front, *held)
+    one = held_row(index, choice, choice.front)
     if choice.fit == "chosen loop" and one >= 0:
         rows = np.array([one])
     elif choice.fit == "opening" and choice.along != "peak":
-        beside = [index.row(name, *held) for name in choice.specimens]
+        beside = [held_row(index, choice, name) for name in choice.specimens]
         rows = np.array([row for row in (*family, *beside) if row >= 0], dtype=int)
     else:
         rows = index.rows_of(choice.specimens)
@@ -172,7 +190,7 @@ def _frame(index: RunIndex, choice: Choice, family: list[int]) -> tuple[float, f
 
 
 def _curve(index: RunIndex, choice: Choice, specimen: str, factor: float, looks: dict[str, Look]) -> Curve | None:
-    row = index.row(specimen, choice.peak, choice.frequency, choice.temperature)
+    row = held_row(index, choice, specimen)
     if row < 0:
         return None
     field, induction = _thinned(index, row)
@@ -207,6 +225,8 @@ def _points(index: RunIndex, chosen: Curve | None, factor: float) -> tuple[tuple
 def _title(index: RunIndex, choice: Choice) -> str:
     held = {"peak": choice.peak, "frequency": choice.frequency, "temperature": choice.temperature}
     words = [spelled(value, _units(index)[name]) for name, value in held.items() if name != choice.along]
+    if choice.hold == "induction" and choice.along != "peak":
+        words[0] = f"B̂ near {spelled(choice.induction, 'T')}"
     who = "chosen specimens" if choice.along == "specimen" else choice.front
     return f"{who} · {', '.join(words)}"
 
@@ -217,7 +237,7 @@ def _summary(index: RunIndex, choice: Choice, chosen: Curve | None, count: int, 
         loops += f" of {count + left_out}"
     if chosen is None:
         why = index.why_not(choice.front, choice.peak, choice.frequency, choice.temperature)
-        setting = index.setting(choice.peak, choice.frequency, choice.temperature)
+        setting = held_words(index, choice)
         return f"{loops}; {choice.front} at {setting}: {why}"
     said = []
     for name in ("remanence", "coercivity"):

@@ -5,7 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from workbench.views.colours import Look, alloy_looks
+from workbench.views.derived.held import off_words
 from workbench.views.derived.index import RunIndex
+from workbench.views.derived.least import LeastLoss, least_loss
 from workbench.views.derived.loops import LoopFamily, loop_family
 from workbench.views.derived.lossmap import LossMap, loss_map
 from workbench.views.derived.permeability import PermeabilityCurves, permeability_curves
@@ -27,6 +29,7 @@ class Page:
     doubts: bool
     """Whether a sign of doubt is in view."""
     status: str
+    least: LeastLoss
 
 
 def page(index: RunIndex, choice: Choice) -> Page:
@@ -42,6 +45,7 @@ def page(index: RunIndex, choice: Choice) -> Page:
         key=_key(index, choice),
         doubts=bool(loops.tip_doubtful.any() or len(tiles.doubtful) or _any_doubtful(permeability)),
         status=status_sentence(index, choice),
+        least=least_loss(index, choice),
     )
 
 
@@ -52,6 +56,6 @@ def _any_doubtful(permeability: PermeabilityCurves) -> bool:
 def _key(index: RunIndex, choice: Choice) -> tuple[tuple[str, Look, str], ...]:
     chosen: dict[str, list[str]] = {}
     for name in choice.specimens:
-        chosen.setdefault(index.alloy_of(name), []).append(name)
+        chosen.setdefault(index.alloy_of(name), []).append(f"{name} {off_words(index, choice, name)}".strip())
     looks = alloy_looks(index.alloy_names)
     return tuple((alloy, look, ", ".join(chosen[alloy])) for alloy, look in looks.items() if alloy in chosen)

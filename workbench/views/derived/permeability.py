@@ -13,6 +13,7 @@ import numpy.typing as npt
 from workbench.base.uncertainty import NORMAL_95
 from workbench.base.vocabulary import label
 from workbench.views.colours import Look, alloy_looks
+from workbench.views.derived.held import held_row
 from workbench.views.derived.index import Floats, RunIndex, spelled
 from workbench.views.derived.ticks import AxisPlan, finite_range, log_axis
 from workbench.views.selection import Choice
@@ -26,7 +27,7 @@ class LadderCurve:
     look: Look
     rows: npt.NDArray[np.intp]
     x: Floats
-    """(run,) tip of the field, A/m (tip of induction, T, where the campaign was set by it)."""
+    """(run,) tip of the field, A/m; tip of induction, T, where that is held or the campaign was set by it."""
     y: Floats
     """(run,) amplitude permeability."""
     doubtful: npt.NDArray[np.bool_]
@@ -51,30 +52,37 @@ class PermeabilityCurves:
     """Closed polygons (x, y) of the 95 % band of the specimen in front, one a stretch without gap."""
     band_note: str
     chosen: tuple[float, float] | None
+    """Run of the specimen in front that is chosen."""
+    held: float | None
+    """Where the vertical line of the held setting stands, in the units of x."""
     summary: str
 
 
 def permeability_curves(index: RunIndex, choice: Choice) -> PermeabilityCurves:
     """Amplitude permeability against the tip of the field, log-log, with the held setting marked."""
-    key = (index.token, "permeability", choice.specimens, choice.front, choice.frequency, choice.temperature)
+    held = (choice.frequency, choice.temperature, _x_name(index, choice))
+    key = (index.token, "permeability", choice.specimens, choice.front, *held)
     still = index.remembered(key, lambda: _still_curves(index, choice, key))
-    row = index.row(choice.front, choice.peak, choice.frequency, choice.temperature)
-    return replace(still, chosen_key=(index.token, choice.front, row), chosen=_chosen(index, row))
+    row = held_row(index, choice, choice.front)
+    chosen = _chosen(index, choice, row)
+    line = choice.induction if choice.hold == "induction" else (chosen[0] if chosen else None)
+    return replace(still, chosen_key=(index.token, choice.front, row, line), chosen=chosen, held=line)
 
 
-def _x_name(index: RunIndex) -> str:
-    return "induction_tip" if index.peak_name == "peak_induction" else "field_tip"
+def _x_name(index: RunIndex, choice: Choice) -> str:
+    by_induction = index.peak_name == "peak_induction" or choice.hold == "induction"
+    return "induction_tip" if by_induction else "field_tip"
 
 
-def _chosen(index: RunIndex, row: int) -> tuple[float, float] | None:
-    x, y = (float(index.values(name)[row]) for name in (_x_name(index), "amplitude_permeability"))
+def _chosen(index: RunIndex, choice: Choice, row: int) -> tuple[float, float] | None:
+    x, y = (float(index.values(name)[row]) for name in (_x_name(index, choice), "amplitude_permeability"))
     return (x, y) if row >= 0 and 0 < x < math.inf and 0 < y < math.inf else None
 
 
 def _still_curves(index: RunIndex, choice: Choice, key: Hashable) -> PermeabilityCurves:
     """Everything but the chosen setting."""
     looks = alloy_looks(index.alloy_names)
-    x_name = _x_name(index)
+    x_name = _x_name(index, choice)
     x_all, y_all = index.values(x_name), index.values("amplitude_permeability")
     curves = tuple(_curve(index, choice, name, x_all, y_all, looks) for name in choice.specimens)
     dropped = sum(int(_missing(index, choice, name, x_all, y_all)) for name in choice.specimens)
@@ -93,6 +101,7 @@ def _still_curves(index: RunIndex, choice: Choice, key: Hashable) -> Permeabilit
         band_note=_band_note(index, front),
         band=_band(index, front),
         chosen=None,
+        held=None,
         summary=_summary(index, front, dropped),
     )
 

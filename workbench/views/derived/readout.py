@@ -5,7 +5,6 @@ from __future__ import annotations
 import math
 from collections.abc import Hashable, Mapping
 from dataclasses import dataclass
-from typing import Any
 
 import numpy as np
 import xarray as xr
@@ -13,8 +12,10 @@ import xarray as xr
 from workbench.base.uncertainty import with_uncertainty
 from workbench.base.vocabulary import BOUNDED_AT_ZERO, QUANTITIES, shown_unit
 from workbench.quantities.mark_table import MARKS
+from workbench.views.derived.held import held_figures, held_row, held_words, off_words, reach
 from workbench.views.derived.index import RunIndex
 from workbench.views.derived.loops import LoopFamily
+from workbench.views.derived.settle import start
 from workbench.views.selection import Choice
 
 MOST_COLUMNS = 6
@@ -36,6 +37,8 @@ class Column:
     remark: str
     capture: str
     repeats: str
+    between: str = ""
+    """Between which runs the figures were read, in words; empty where they are those of one run."""
 
 
 @dataclass(frozen=True)
@@ -55,8 +58,8 @@ def readout(index: RunIndex, choice: Choice) -> Readout:
     names = [choice.front, *(name for name in choice.specimens if name != choice.front)] if choice.front else []
     shown = names[:MOST_COLUMNS]
     return Readout(
-        key=(index.token, "readout", choice.specimens, choice.front, choice.peak, choice.frequency, choice.temperature),
-        title=index.setting(choice.peak, choice.frequency, choice.temperature),
+        key=(index.token, "readout", choice.specimens, choice.front, held_words(index, choice)),
+        title=held_words(index, choice),
         rows=tuple((word.symbol, shown_unit(word.unit), word.meaning) for word in QUANTITIES.values()),
         columns=tuple(_column(index, choice, name) for name in shown),
         left_out=len(names) - len(shown),
@@ -64,30 +67,44 @@ def readout(index: RunIndex, choice: Choice) -> Readout:
 
 
 def _column(index: RunIndex, choice: Choice, specimen: str) -> Column:
-    held = (choice.peak, choice.frequency, choice.temperature)
-    row = index.row(specimen, *held)
+    held = held_figures(index, choice, specimen)
     alloy, front = index.alloy_of(specimen), specimen == choice.front
-    if row < 0:
+    if held.missing:
         blank = ("",) * len(QUANTITIES)
-        return Column(specimen, alloy, front, blank, (), (), index.why_not(specimen, *held), "", "", "")
-    marks = index.marks(row)
-    seen = _seen(index.text_at("seen", row))
+        return Column(specimen, alloy, front, blank, (), (), held.missing, "", "", "")
+    rows = held.rows
+    figures = zip(QUANTITIES, held.values, held.spreads, strict=True)
     return Column(
         specimen=specimen,
         alloy=alloy,
         in_front=front,
-        figures=tuple(_figure(index, name, row) for name in QUANTITIES),
-        doubts=tuple(_said(mark, seen) for mark in marks if MARKS[mark].weight == "doubt"),
-        notes=tuple(_said(mark, seen) for mark in marks if MARKS[mark].weight == "note"),
-        standing=_standing(index, row),
-        remark=index.text_at("remark", row),
-        capture=index.text_at("capture", row),
-        repeats=index.text_at("repeat", row),
+        figures=tuple(_figure(name, float(value), float(spread)) for name, value, spread in figures),
+        doubts=_marks(index, rows, "doubt"),
+        notes=_marks(index, rows, "note"),
+        standing="; ".join(dict.fromkeys(_standing(index, row) for row in rows)),
+        remark="; ".join(dict.fromkeys(filter(None, (index.text_at("remark", row) for row in rows)))),
+        capture=" and ".join(index.text_at("capture", row) for row in rows),
+        repeats=", ".join(dict.fromkeys(index.text_at("repeat", row) for row in rows)),
+        between=_between(index, rows),
     )
 
 
-def _figure(index: RunIndex, name: str, row: int) -> str:
-    value, spread = float(index.values(name)[row]), float(index.values("u_" + name)[row])
+def _marks(index: RunIndex, rows: tuple[int, ...], weight: str) -> tuple[str, ...]:
+    said = []
+    for row in rows:
+        seen = _seen(index.text_at("seen", row))
+        said += [_said(mark, seen) for mark in index.marks(row) if MARKS[mark].weight == weight]
+    return tuple(dict.fromkeys(said))
+
+
+def _between(index: RunIndex, rows: tuple[int, ...]) -> str:
+    if len(rows) < 2:
+        return ""
+    tips = [f"{float(index.values('induction_tip')[row]):.3g}" for row in rows]
+    return f"between {tips[0]} and {tips[1]} T"
+
+
+def _figure(name: str, value: float, spread: float) -> str:
     # A spread at the rounding of the machine says that none was stated, not that the figure is perfect.
     return with_uncertainty(
         value, spread if spread > 1e-9 * abs(value) else math.nan, bounded_at_zero=name in BOUNDED_AT_ZERO
@@ -125,30 +142,50 @@ def status_sentence(index: RunIndex, choice: Choice) -> str:
         return "This store holds no loops yet: reduce a campaign into it."
     if not choice.specimens:
         return "No specimen is chosen: choose at least one in the list. The last picture stays."
-    setting = index.setting(choice.peak, choice.frequency, choice.temperature)
-    row = index.row(choice.front, choice.peak, choice.frequency, choice.temperature)
+    if int((index.rows >= 0).sum()) == 1:
+        return f"{choice.front} at {held_words(index, choice)}: the only run in this store."
+    if choice.hold == "induction" and choice == index.remembered("start", lambda: start(index)):
+        return _first_view(index, choice)
+    setting = held_words(index, choice)
+    row = held_row(index, choice, choice.front)
     if row < 0:
         why = index.why_not(choice.front, choice.peak, choice.frequency, choice.temperature)
         said = {"no run": "there is no run at this setting", "set aside": "the run at this setting is set aside"}[why]
         return f"{choice.front} at {setting}: {said}; its figures are left empty."
     if not any(math.isfinite(index.values(name)[row]) for name in QUANTITIES):
         return f"{choice.front} at {setting}: none of its figures is computable."
-    if int((index.rows >= 0).sum()) == 1:
-        return f"{choice.front} at {setting}: the only run in this store."
     if not np.isfinite(index.values(choice.quantity)[index.rows_of([choice.front])]).any():
         symbol = QUANTITIES[choice.quantity].symbol
         return f"{choice.front}: {symbol} is computable at no setting; choose another quantity for the map."
+    if choice.hold == "induction":
+        return f"{choice.front} at {setting}. {_read_between(index, choice)}"
     doubt = " This run is doubtful, see its marks." if index.doubtful[row] else ""
     return f"{choice.front} at {setting}.{doubt}"
 
 
-def slice_in_view(index: RunIndex, choice: Choice, family: LoopFamily) -> xr.Dataset:
+def _first_view(index: RunIndex, choice: Choice) -> str:
+    lowest, top = reach(index, choice, choice.specimens)
+    whose = "that all reach" if lowest <= (choice.induction or 0.0) <= top else "to begin with"
+    height = "" if choice.induction == 1.0 else f", the highest round value {whose}"
+    who = "one ring of each alloy" if len(choice.specimens) > 1 else choice.front
+    return (
+        f"First view: {who}, {choice.front} in front, held at {held_words(index, choice)}{height}. "
+        f"{_read_between(index, choice)}"
+    )
+
+
+def _read_between(index: RunIndex, choice: Choice) -> str:
+    held = held_figures(index, choice, choice.front)
+    loop = f"The loop drawn is the nearest one measured, {off_words(index, choice, choice.front)}."
+    if held.missing:
+        return f"Its figures are left empty, {held.missing}. {loop}"
+    doubt = " This run is doubtful, see its marks." if index.doubtful[list(held.rows)].any() else ""
+    if len(held.rows) == 1:
+        return f"Its figures are those of one run.{doubt}"
+    return f"Its figures are read {_between(index, held.rows)}. {loop}{doubt}"
+
+
+def slice_in_view(index: RunIndex, family: LoopFamily) -> xr.Dataset:
     """The runs whose loops are in view, as a Dataset of dim run."""
-    rows = {index.row(each.get("front", choice.front), **_held(choice, each)) for each in family.tip_choices}
-    rows |= {curve.row for curve in family.beside}
-    return index.runs.isel(run=sorted(row for row in rows if row >= 0))
-
-
-def _held(choice: Choice, changes: Mapping[str, Any]) -> dict[str, Any]:
-    names = ("peak", "frequency", "temperature")
-    return {name: changes.get(name, getattr(choice, name)) for name in names}
+    rows = {*family.tip_rows, *(curve.row for curve in family.beside)}
+    return index.runs.isel(run=sorted(rows))

@@ -8,7 +8,9 @@ from dataclasses import replace
 import numpy as np
 
 from workbench.base.vocabulary import QUANTITIES
+from workbench.views.derived.held import held_row, reach
 from workbench.views.derived.index import Axis, RunIndex
+from workbench.views.derived.ticks import finite_range, round_down, round_up
 from workbench.views.selection import Choice
 
 START_ALLOYS = 8
@@ -22,17 +24,17 @@ def start(index: RunIndex) -> Choice:
         first_of.setdefault(index.alloy_of(specimen), specimen)
     chosen = tuple(first_of.values())[:START_ALLOYS]
     front = chosen[0] if chosen else ""
-    peaks, frequencies, temperatures = index.ladder(front)
+    _, frequencies, temperatures = index.ladder(front)
     begun = Choice(
         specimens=chosen,
         front=front,
         frequency=_lowest_common(index, chosen) if chosen else None,
         temperature=_nearest(temperatures, ROOM_TEMPERATURE, by_ratio=False),
-        quantity=_loss_quantity(index, chosen),
+        quantity=loss_quantity(index, chosen),
     )
     if begun.frequency not in frequencies:
         begun = replace(begun, frequency=_nearest(frequencies, None))
-    return replace(begun, peak=_peak_near(index, begun, peaks, 1.0))
+    return settled(index, replace(begun, hold="induction", induction=_start_induction(index, begun)))
 
 
 def settled(index: RunIndex, choice: Choice, before: Choice | None = None) -> Choice:
@@ -52,8 +54,8 @@ def settled(index: RunIndex, choice: Choice, before: Choice | None = None) -> Ch
     if front not in chosen:
         chosen = (*chosen, front)
     peaks, frequencies, temperatures = index.ladder(front)
-    quantity = choice.quantity if choice.quantity in QUANTITIES else _loss_quantity(index, chosen)
-    return replace(
+    quantity = choice.quantity if choice.quantity in QUANTITIES else loss_quantity(index, chosen)
+    fit = replace(
         choice,
         specimens=chosen,
         front=front,
@@ -62,6 +64,51 @@ def settled(index: RunIndex, choice: Choice, before: Choice | None = None) -> Ch
         temperature=_nearest(temperatures, choice.temperature, by_ratio=False),
         quantity=quantity,
     )
+    return _held(index, fit, before) if fit.hold == "induction" else fit
+
+
+def _held(index: RunIndex, choice: Choice, before: Choice | None) -> Choice:
+    """With the induction held the peak follows; a peak newly chosen holds the induction that its run reaches."""
+    stepped = before is not None and before.hold == "induction" and before.induction == choice.induction
+    peak_chosen = stepped and before is not None and choice.peak != before.peak
+    newly_held = before is not None and before.hold != "induction" and before.induction == choice.induction
+    if choice.induction is None or newly_held or peak_chosen:
+        choice = replace(choice, induction=reached_by(index, choice) or choice.induction or 1.0)
+    row = held_row(index, choice, choice.front)
+    return choice if row < 0 else replace(choice, peak=index.peak_of(row))
+
+
+def reached_by(index: RunIndex, choice: Choice) -> float | None:
+    """Tip of induction of the run at the peak chosen, T; None where there is none to read."""
+    row = index.row(choice.front, choice.peak, choice.frequency, choice.temperature)
+    tip = float(index.values("induction_tip")[row]) if row >= 0 else math.nan
+    return tip if tip > 0 else None
+
+
+def _start_induction(index: RunIndex, choice: Choice) -> float | None:
+    """1 T, or the highest of 1-2-5 that all the chosen reach; None where that is below the ladder in front."""
+    _, top = reach(index, choice, choice.specimens)
+    if not top > 0:
+        return None
+    held = 1.0 if top >= 1 else round_down(top)
+    return held if held >= reach(index, choice, [choice.front])[0] else None
+
+
+def induction_steps(index: RunIndex, choice: Choice) -> tuple[float, ...]:
+    """Round values to step the held induction along, and the value held, T."""
+    tips = index.values("induction_tip")[index.rows_of(choice.specimens)]
+    low, high = finite_range(tips, positive=True)
+    steps: set[float] = set() if choice.induction is None else {choice.induction}
+    if math.isfinite(high):
+        step = round_up(high / 25)
+        steps |= {float(f"{step * place:.6g}") for place in range(1, math.floor(high / step) + 1)}
+        below: list[float] = []
+        decade = round_down(step)
+        while decade > low and len(below) < 12:
+            below.append(decade)
+            decade = round_down(decade * 0.99)
+        steps |= set(below)
+    return tuple(sorted(steps))
 
 
 def _nearest(axis: Axis, value: float | None, by_ratio: bool = True) -> float | None:
@@ -84,21 +131,8 @@ def _lowest_common(index: RunIndex, chosen: tuple[str, ...]) -> float | None:
     return given[0] if given else None
 
 
-def _peak_near(index: RunIndex, choice: Choice, peaks: Axis, induction: float) -> float | None:
-    """The peak whose run reaches the induction most nearly, by ratio; the first where none can be read."""
-    reached = index.values("induction_tip")
-    best, best_distance = _nearest(peaks, None), math.inf
-    for peak in peaks:
-        row = index.row(choice.front, peak, choice.frequency, choice.temperature)
-        tip = reached[row] if row >= 0 else math.nan
-        distance = abs(math.log(tip / induction)) if tip > 0 else math.inf
-        if distance < best_distance:
-            best, best_distance = peak, distance
-    return best
-
-
-def _loss_quantity(index: RunIndex, chosen: tuple[str, ...]) -> str:
-    """W/kg where every chosen specimen has it, else W/m3: the two are never mixed."""
+def loss_quantity(index: RunIndex, chosen: tuple[str, ...]) -> str:
+    """The loss to compare by: W/kg where every chosen specimen has it, else W/m3: the two are never mixed."""
     per_mass = index.values("specific_loss")
     for name in chosen:
         if not np.isfinite(per_mass[index.rows_of([name])]).any():

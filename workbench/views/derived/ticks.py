@@ -149,6 +149,19 @@ def round_up(value: float) -> float:
     return next(lead * decade for lead in (1.0, 2.0, 5.0, 10.0) if lead * decade >= value * (1 - 1e-9))
 
 
+def round_down(value: float) -> float:
+    """The highest of 1, 2, 5 times a power of ten that is not above the value.
+
+    Examples
+    --------
+    >>> round_down(0.86), round_down(2.0), round_down(0.0199)
+    (0.5, 2.0, 0.01)
+    """
+    decade = 10.0 ** math.floor(math.log10(value) + 1e-12)
+    lead = max(lead for lead in (1.0, 2.0, 5.0) if lead * decade <= value * (1 + 1e-9))
+    return float(f"{lead * decade:.6g}")
+
+
 def finite_range(values: np.ndarray, positive: bool = False) -> tuple[float, float]:
     """Smallest and largest finite (and positive) value; NaN, NaN where there is none."""
     good = np.isfinite(values) & (values > 0) if positive else np.isfinite(values)

@@ -9,6 +9,7 @@ import ipywidgets
 
 from workbench.base.vocabulary import QUANTITIES
 from workbench.views.derived.index import Axis, RunIndex, spelled
+from workbench.views.derived.settle import induction_steps
 from workbench.views.selection import ALONG, FITS, Choice
 
 NOT_GIVEN = ""
@@ -24,18 +25,23 @@ class Controls(ipywidgets.Box):
         self._filling = False
         self.specimens = ipywidgets.SelectMultiple(rows=4, layout=ipywidgets.Layout(width="auto"))
         self.front = _dropdown("in front")
+        self.hold = _dropdown("hold")
+        self.hold.options = (("B̂ reached", "induction"), ("Ĥ set", "peak"))
         self.along = _dropdown("one loop per")
         self.along.options = ALONG
         self.fit = _dropdown("axes fit")
         self.fit.options = FITS
         self.quantity = _dropdown("map of")
         self.quantity.options = [(_quantity_name(name), name) for name in QUANTITIES]
-        self.peak, self.frequency, self.temperature = (_slider(name) for name in ("peak", "frequency", "temperature"))
+        self.induction, self.peak, self.frequency, self.temperature = (
+            _slider(name) for name in ("B̂ reached", "peak", "frequency", "temperature")
+        )
         self.show_set_aside = ipywidgets.Checkbox(description="show runs set aside", indent=False)
         self.by_trait: dict[str, Any] = {
             name: getattr(self, name)
             for name in (
-                "specimens", "front", "along", "fit", "peak", "frequency", "temperature", "quantity", "show_set_aside",
+                "specimens", "front", "hold", "induction", "peak", "frequency", "temperature", "along", "fit",
+                "quantity", "show_set_aside",
             )
         }  # fmt: skip
         for name, control in self.by_trait.items():
@@ -67,6 +73,11 @@ class Controls(ipywidgets.Box):
             _fill_steps(self.peak, peaks, peak_unit, choice.peak)
             _fill_steps(self.frequency, frequencies, "Hz", choice.frequency)
             _fill_steps(self.temperature, temperatures, "°C", choice.temperature)
+            _fill_steps(self.induction, induction_steps(index, choice), "T", choice.induction)
+            self.hold.options = (("B̂ reached", "induction"), (self.peak.description, "peak"))
+            self.hold.value = choice.hold
+            for control, held in ((self.induction, "induction"), (self.peak, "peak")):
+                control.layout.display = None if choice.hold == held else "none"
             self.along.value, self.fit.value = choice.along, choice.fit
             self.quantity.value = choice.quantity or None
             self.show_set_aside.value = choice.show_set_aside

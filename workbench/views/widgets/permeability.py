@@ -80,12 +80,13 @@ class PermeabilityPane(Pane):
 
     def draw_chosen(self, shown: PermeabilityCurves) -> None:
         """The held setting of the specimen in front."""
+        inside = shown.held is not None and shown.x_axis.low <= shown.held <= shown.x_axis.high
+        line = ([shown.held] * 2, [shown.y_axis.low, shown.y_axis.high]) if inside else (EMPTY, EMPTY)
+        put(self.layers["held"], *line)
         if shown.chosen is None:
-            put(self.layers["held"], EMPTY, EMPTY)
             put(self.layers["chosen"], EMPTY, EMPTY)
             return
         x, y = shown.chosen
-        put(self.layers["held"], [x, x], [shown.y_axis.low, shown.y_axis.high])
         put(self.layers["chosen"], [x], [y], colors=[shown.front_colour])
 
 

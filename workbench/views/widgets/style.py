@@ -12,6 +12,9 @@ STYLE = """<style>
 .wb-head summary { cursor: pointer; color: var(--jp-content-link-color, #0072b2); }
 .wb-head ul { margin: 2px 0 6px; padding-left: 20px; max-height: 180px; overflow-y: auto; }
 .wb-key { display: flex; flex-wrap: wrap; gap: 2px 20px; font-size: 12px; margin: 4px 0 2px; }
+.wb-least { display: flex; flex-wrap: wrap; gap: 1px 16px; font-size: 13.5px; margin: 5px 0 2px; padding: 3px 8px;
+  border-left: 4px solid #0072b2; background: var(--jp-layout-color2); }
+.wb-least > span:first-child { opacity: 0.85; }
 .wb-entry { display: inline-flex; align-items: center; gap: 6px; }
 .wb-entry > i { display: inline-block; width: 14px; height: 11px; }
 .wb-controls { display: flex; flex-flow: row wrap; gap: 0 14px; overflow: visible; }
@@ -63,8 +66,5 @@ body[data-jp-theme-light="false"] :is(.wb-swatch, .wb-ramp > i) { filter: bright
 .wb-table .wb-spread { text-align: left; padding-left: 0; white-space: nowrap; opacity: 0.85; }
 .wb-table .wb-words td { max-width: 230px; overflow-wrap: anywhere; }
 .wb-table code { font-size: 11px; }
-@container (min-width: 900px) {
-  .wb-controls .wb-rest > :nth-child(3n+1) .widget-label { width: 54px; flex-basis: 54px; }
-}
 @container (max-width: 760px) { .wb-panes > .wb-pane { flex-basis: 100%; } }
 </style>"""

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import traceback
 from collections.abc import Hashable, Mapping
-from dataclasses import asdict
+from dataclasses import asdict, replace
 from typing import Any, NamedTuple
 
 import ipywidgets
@@ -16,7 +16,7 @@ from workbench.views.derived.index import RunIndex, StoreLike, run_index
 from workbench.views.derived.overview import Overview, overview
 from workbench.views.derived.page import Page, page
 from workbench.views.derived.readout import slice_in_view, status_sentence
-from workbench.views.derived.settle import settled, start
+from workbench.views.derived.settle import reached_by, settled, start
 from workbench.views.figures import fallback
 from workbench.views.selection import Choice, Selection
 from workbench.views.widgets.controls import Controls
@@ -63,13 +63,16 @@ class Workbench(ipywidgets.VBox):
         self.selection = selection or Selection(**asdict(start(run_index(store))))
         self.panes = tuple(kind(self._choose_by_click) for kind in (LoopsPane, PermeabilityPane, MapPane))
         self.controls = Controls(self._choose)
-        self.header, self.alloy_key, self.status, self.failure, self.readout = (ipywidgets.HTML() for _ in range(5))
+        self.header, self.alloy_key, self.status, self.failure, self.readout, self.least = (
+            ipywidgets.HTML() for _ in range(6)
+        )
         self.stepper = Stepper(self._choose)
         row, line = ipywidgets.Box(self.panes), ipywidgets.Box([self.stepper, self.status])
         row.add_class("wb-panes")
         line.add_class("wb-line")
         sheet = ipywidgets.HTML(STYLE, layout=ipywidgets.Layout(display="none"))
-        super().__init__([sheet, self.header, self.controls, self.alloy_key, row, line, self.readout, self.failure])
+        above = [sheet, self.header, self.controls, self.least, self.alloy_key]
+        super().__init__([*above, row, line, self.readout, self.failure])
         self.add_class("wb-page")
         self.render()
         self.selection.observe(self._changed)
@@ -77,6 +80,12 @@ class Workbench(ipywidgets.VBox):
         take_over_cell(str(getattr(store, "path", "")), self)
 
     def _choose(self, values: dict[str, Any]) -> None:
+        choice = self.selection.choice()
+        if choice.hold == "induction" and "peak" in values and self._shown is not None:
+            # A run pointed at is held by the induction that it reaches, also where its peak is the same.
+            tip = reached_by(self._shown.runs, replace(choice, **values))
+            # A setting without a run reaches nothing: it can only be held by what is set.
+            values = {**values, **({"hold": "peak"} if tip is None else {"induction": tip})}
         self.selection.choose(**values)
 
     def _choose_by_click(self, values: dict[str, Any]) -> None:
@@ -116,6 +125,7 @@ class Workbench(ipywidgets.VBox):
             for pane, each in zip(self.panes, shown, strict=True):
                 pane.show(each)
             _say(self.alloy_key, markup.key(made.key, bool(made.map.hole_texts), made.doubts))
+            _say(self.least, markup.least_loss(made.least))
             _say(self.readout, markup.readout_table(made.readout))
             self.stepper.show(made.loops)
             self.page = made
@@ -138,7 +148,7 @@ class Workbench(ipywidgets.VBox):
         index = run_index(self.store, choice.show_set_aside)
         if self.page is None:
             return index.runs.isel(run=[])
-        return slice_in_view(index, choice, self.page.loops)
+        return slice_in_view(index, self.page.loops)
 
     def state(self) -> dict[str, Any]:
         """What is chosen, as JSON holds it; `from_state` brings the very view back."""
