@@ -82,6 +82,25 @@ def test_a_multiline_remark_keeps_line_numbers(folder: Path) -> None:
     assert "runs.csv, line 4, frequency" in message(folder, text)
 
 
+@pytest.mark.parametrize(
+    ("first", "second", "where"),
+    [
+        ('"open', "", "line 2"),  # the rest of the file would be one cell
+        ('"open', '"open too', "line 2"),  # the next quote would close it, two lines on
+        ("", '"far ' + "y" * 200_000, "line 4"),
+    ],
+)
+def test_an_open_quote_swallows_no_lines(folder: Path, first: str, second: str, where: str) -> None:
+    lines = [f"a,R1,loop,50,23,100,{first}", "b,R1,loop,50,23,100,", f"c,R1,loop,50,23,100,{second}"]
+    text = message(folder, "\n".join([f"{HEAD},remark", *lines, "d,R1,loop,50,23,100,", ""]))
+    assert f"runs.csv, {where}: wanted each quoted cell closed" in text
+
+
+def test_a_quote_inside_a_word_is_a_letter(folder: Path) -> None:
+    (run, _) = read(folder, f'{HEAD},remark\na,R1,loop,50,23,100,5" core\nb,R1,loop,50,23,100,6" core\n')
+    assert run.remark == '5" core'
+
+
 GOOD = "a.csv,R1,loop,50,23,100"
 LINES = [
     ("a.csv,R1,loop,fifty,23,100", "line 2, frequency: wanted a number above 0", "'fifty'"),

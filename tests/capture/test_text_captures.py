@@ -229,6 +229,12 @@ BAD_ROWS: list[tuple[str, Callable[[list[str]], list[str]], str]] = [
     ("short", lambda rows: rows[:150], "the record is shorter than a cycle: found 0.75 cycles of 50 Hz"),
     ("constant", lambda rows: [row.split(",")[0] + ",1.5,0.1" for row in rows], "'field [V]' is constant at 1.5 V"),
     ("zero", lambda rows: [",".join([*row.split(",")[:2], "0"]) for row in rows], "'induction [V]' is all zero"),
+    (
+        "vanishing",
+        lambda rows: [f"{row}e-300" for row in rows],
+        "'induction [V]' is as good as zero: it swings by 2e-301 V",
+    ),
+    ("a cell too long to split", _changed(7, "y" * 200_000), "line 9 has 1 cells; wanted 3"),
 ]
 
 
@@ -277,7 +283,8 @@ HEADS = [
     ("time [V],field [V],induction [V]", "the time column 'time [V]' has no unit of time"),
     ("time [s],feld [V],induction [V]", "there is no column 'field' for the field; found 'time [s]', 'feld [V]'"),
     ("time [s],feld [V],induction [V]", "Did you mean 'feld'?"),
-    ("time [s],field [V],field [mV],induction [V]", "more than one column is called 'field'"),
+    ("time [s],field [V],field [mV],induction [V]", "Write the whole header cell in [columns] of campaign.toml"),
+    ("time [s],field [V],field [V],induction [V]", "Write the column's number in [columns] of campaign.toml"),
 ]
 
 
@@ -309,6 +316,8 @@ def test_a_column_gone(folder: Path, one_capture: Make, wave: Wave) -> None:
         (b"Dear colleague,\nthe ring is in the oven.\n", "there is no row of numbers; the file begins with 'Dear coll"),
         (bytes(range(256)) * 20, "is no text"), (b"\xff\xfe\x00", "is no text"), (b"\x00" * 5000, "is no text"),
         (HEAD.encode() + b"\nnone,none,none\n", "there is a header and no row of numbers"),
+        (HEAD.encode() + b"\n0,1,0\x00\n" + b"0,1,1\n" * 9, "is no text"),
+        (b"y" * 40_000, "there is no row of numbers; the file begins with 'yyy"),
     ],
 )  # fmt: skip
 def test_files_that_hold_no_numbers(folder: Path, one_capture: Make, data: bytes, found: str) -> None:

@@ -57,6 +57,12 @@ def test_two_handles_see_each_other_only_when_asked(three):
     assert mine.runs["standing"].values.tolist() == ["set aside", "set aside", "kept"]
 
 
+def test_a_reason_of_bytes_that_are_no_text_is_kept_as_escapes(three):
+    store = three.reduce()
+    store.set_aside("run-1.txt", b"loose\xff lead".decode("utf-8", "surrogateescape"))
+    assert store.history["text"].iloc[-1] == "loose\\udcff lead"
+
+
 @pytest.mark.parametrize(
     ("act", "words"),
     [

@@ -64,6 +64,30 @@ def test_a_cut_catalog(three):
     refused(lambda: open_store(three.into), "damaged", "the captures are untouched")
 
 
+@pytest.mark.parametrize(
+    "statement",
+    [
+        "DELETE FROM sheets", "DELETE FROM states", "UPDATE sheets SET specimens = '{'",
+        "UPDATE sheets SET specimens = 5", "UPDATE runs SET frequency = 'fifty'", "UPDATE runs SET repeat = NULL",
+    ],
+)  # fmt: skip
+def test_a_catalog_with_unreadable_content(three, statement):
+    three.reduce()
+    with closing(sqlite3.connect(three.into / "catalog.sqlite")) as catalog:
+        catalog.execute(statement)
+        catalog.commit()
+    refused(lambda: open_store(three.into), "damaged", "the captures are untouched")
+
+
+@pytest.mark.parametrize("spoil", [Path.unlink, lambda catalog: catalog.write_bytes(b"")])
+def test_segments_without_their_catalog_are_kept(three, spoil):
+    three.reduce()
+    spoil(three.into / "catalog.sqlite")
+    before = everything(three.into)
+    refused(three.reduce, "segments without a catalog", "Copy catalog.sqlite back")
+    assert everything(three.into) == before
+
+
 @pytest.mark.parametrize("statement", ["PRAGMA user_version = 2", "UPDATE meta SET value = '2' WHERE name = 'format'"])
 def test_a_newer_format(three, statement):
     three.reduce()

@@ -31,7 +31,7 @@ def test_a_setting_is_found_although_its_last_digit_differs(runs: xr.Dataset) ->
     [
         (Choice(specimen=["R11"]), ["specimen", "R11", "Did you mean 'R1'?"]),
         (Choice(frequency=[50.5]), ["frequency", "50.5 Hz", "Did you mean '50 Hz'?"]),
-        (Choice(peak_induction=[1.0]), ["peak_induction", "1 T"]),
+        (Choice(peak_induction=[1.0]), ["peak_induction", "1 T", "There is none to choose from"]),
         (Choice(specimen=[]), ["found no kept run"]),
     ],
 )

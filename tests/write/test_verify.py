@@ -107,6 +107,9 @@ def test_a_folder_without_a_list_is_no_handoff(tmp_path: Path) -> None:
         verify(tmp_path)
     with pytest.raises(HandoffError, match="nothing of that name"):
         verify(tmp_path / "nowhere")
+    (tmp_path / "note.txt").touch()
+    with pytest.raises(HandoffError, match="found a file"):
+        verify(tmp_path / "note.txt")
 
 
 def test_a_list_of_other_bytes_is_refused(folder: Path) -> None:

@@ -19,6 +19,8 @@ ABSURD = 1e30
 """Beyond any reading in any unit, and safe to square."""
 WHOLE = 0.98
 """Part of a cycle of the line's frequency that a record must hold; the finer judgement comes later."""
+VANISHING = 1e-30
+"""Below any reading in any unit, and safe to square."""
 UNITS = {"field": ("V", "div", "A", "A/m"), "induction": ("V", "div", "Wb", "T")}
 
 
@@ -27,7 +29,7 @@ def check_samples(raw: Raw) -> None:
 
     Raises
     ------
-    CaptureError    different lengths, too few samples, not finite, absurdly large, constant, all zero
+    CaptureError    different lengths, too few samples, not finite, absurdly large, constant, as good as zero
     """
     columns = [each for each in (raw.time, raw.field, raw.induction) if each is not None]
     lengths = {len(each.values) for each in columns}
@@ -62,9 +64,10 @@ def _check_values(column: Column, raw: Raw) -> None:
 
 def _check_life(column: Column) -> None:
     low, high = float(column.values.min()), float(column.values.max())
-    if low != high:
+    if high - low > VANISHING:
         return
-    found = "all zero" if low == 0 else f"constant at {low:g} {column.unit}"
+    zero = "all zero" if low == high == 0 else f"as good as zero: it swings by {high - low:g} {column.unit}"
+    found = f"constant at {low:g} {column.unit}" if low == high != 0 else zero
     raise CaptureError(f"'{column.name}' is {found}", "Look at lead, range and trigger, and repeat the run.")
 
 

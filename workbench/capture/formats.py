@@ -118,9 +118,10 @@ def choose(role: str, wanted: str | int, names: list[str], numbered: bool = True
         if key in candidates:
             place = candidates.index(key)
             if candidates.count(key) > 1:
-                both = " and ".join(f"'{cells[at]}'" for at, each in enumerate(candidates) if each == key)
-                reason = f"more than one column is called '{target}': {both}"
-                raise CaptureError(reason, f"Write the whole header cell in [columns], {role} of campaign.toml.")
+                same = [cells[at] for at, each in enumerate(candidates) if each == key]
+                reason = f"more than one column is called '{target}': {' and '.join(map(repr, same))}"
+                instead = "whole header cell" if len(set(same)) == len(same) else "column's number"
+                raise CaptureError(reason, f"Write the {instead} in [columns] of campaign.toml.")
             return place
     return None
 

@@ -62,7 +62,7 @@ def look(text: str, columns: Columns) -> Layout:
     lines = [line for _, line in found]
     separator, decimal, width = _dialect(lines)
     if not width:
-        raise _without_numbers(lines, columns)
+        raise _without_numbers(lines or [text[:LOOK]], columns)
     rows = [list(split_cells(line, separator)) for line in lines]
     header = _header(lines, rows, columns, separator)
     first = _first_row(lines, rows, header, width, decimal)

@@ -88,7 +88,8 @@ def _ask_for_group(group: h5py.Group, names: list[str]) -> None:
     inner = [name for name in inner if group.get(name, getclass=True) is h5py.Group]
     if group.name == "/" and inner:
         file = Path(group.file.filename).name
-        reason = f"'{file}' holds {len(inner)} groups, and runs.csv names none of them"
+        groups = "1 group" if len(inner) == 1 else f"{len(inner)} groups"
+        reason = f"'{file}' holds {groups}, and runs.csv names none of them"
         raise CaptureError(reason, f"Name the group behind the file's path, e.g. {file}#{inner[0]}.")
 
 
@@ -140,7 +141,8 @@ def _number(name: str, attributes: dict[str, Any], key: str, default: float) -> 
     except ValueError:
         number = math.nan
     if not math.isfinite(number) or (key == "scale" and number == 0):
-        reason = f"'{name}' has the {key} '{_text(attributes[key])[:40]}'; wanted a finite number"
+        wanted = "a finite number other than zero" if key == "scale" else "a finite number"
+        reason = f"'{name}' has the {key} '{_text(attributes[key])[:40]}'; wanted {wanted}"
         raise CaptureError(reason, _AGAIN)
     return number
 

@@ -52,7 +52,10 @@ def read_runs(folder: Path, sheet: SheetRead) -> tuple[tuple[RunLine, ...], tupl
     text, problem = _read_text(folder / LIST_NAME)
     if problem:
         return (), (problem,)
-    separator, lines = _table(text)
+    try:
+        separator, lines = _table(text)
+    except _QuoteError as error:
+        return (), (error.finding,)
     if not lines:
         return (), (Finding(LIST_NAME, f"a header line, e.g. {_EXAMPLE}", "no line of cells"),)
     header, found = _read_header(*lines[0], decimal_comma=separator != ",")
@@ -84,21 +87,39 @@ def _read_text(path: Path) -> tuple[str, Finding | None]:
     return text, None
 
 
+class _QuoteError(Exception):
+    """A quote that would swallow the lines below it."""
+
+    def __init__(self, line: int, error: csv.Error) -> None:
+        super().__init__(line, error)
+        remedy = "Double a quote that belongs to the text, and put the whole cell in quotes."
+        where = f"{LIST_NAME}, line {line}"
+        self.finding = Finding(where, "each quoted cell closed before the next separator", str(error), remedy)
+
+
 def _table(text: str) -> tuple[str, list[tuple[int, list[str]]]]:
-    """Separator, and the filled lines with their numbers; lines that begin with # are remarks."""
+    """Separator, and the filled lines with their numbers; lines that begin with # are remarks.
+
+    Raises
+    ------
+    _QuoteError    a quote that is not closed, or text behind a closed one
+    """
     lines = split_lines(text)
     first = next((line for line in lines if line.strip() and not line.lstrip().startswith("#")), "")
     separator = max(SEPARATORS, key=first.count)
     kept = [(number, line) for number, line in enumerate(lines, 1) if not line.lstrip().startswith("#")]
     # Line numbers are kept through the csv module, which joins lines inside quotes.
-    reader = csv.reader((line + "\n" for _, line in kept), delimiter=separator, skipinitialspace=True)
+    reader = csv.reader((line + "\n" for _, line in kept), delimiter=separator, skipinitialspace=True, strict=True)
     table: list[tuple[int, list[str]]] = []
     start = 0
-    for cells in reader:
-        trimmed = [cell.strip() for cell in cells]
-        if any(trimmed):
-            table.append((kept[start][0], trimmed))
-        start = reader.line_num
+    try:
+        for cells in reader:
+            trimmed = [cell.strip() for cell in cells]
+            if any(trimmed):
+                table.append((kept[start][0], trimmed))
+            start = reader.line_num
+    except csv.Error as error:
+        raise _QuoteError(kept[start][0], error) from error
     return separator, table
 
 

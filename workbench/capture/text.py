@@ -37,10 +37,10 @@ def _likely(data: bytes) -> tuple[str, ...]:
     if data.startswith((b"\xff\xfe", b"\xfe\xff")):
         return ("utf-16",)
     head = data[:_LOOK]
-    if b"\x00" in head:
-        # Digits and separators have their zero byte at one parity only.
-        little = head[1::2].count(0) > head[::2].count(0)
-        return ("utf-16-le",) if little else ("utf-16-be",)
+    # Digits and separators have their zero byte at one parity only; a stray one makes no UTF-16.
+    odd, even = head[1::2].count(0), head[::2].count(0)
+    if max(odd, even) > len(head) / 8:
+        return ("utf-16-le",) if odd > even else ("utf-16-be",)
     return ("utf-8-sig", "latin-1")
 
 
@@ -82,7 +82,10 @@ def split_cells(line: str, separator: str) -> tuple[str, ...]:
     >>> split_cells('"a;b"; c ;', ";")
     ('a;b', 'c', '')
     """
-    rows = list(csv.reader([line], delimiter=separator, skipinitialspace=True))
+    try:
+        rows = list(csv.reader([line], delimiter=separator, skipinitialspace=True))
+    except csv.Error:  # a cell of more than 128 KB
+        rows = [line.split(separator)]
     return tuple(cell.strip() for cell in rows[0]) if rows else ()
 
 

@@ -22,8 +22,8 @@ def prepare_store(store: Path, campaign: Campaign) -> None:
 
     Raises
     ------
-    StoreError    `store` is the campaign folder, a file, a folder of other things, no sound store, or
-                  another campaign's: neither its title nor its folder is this one's
+    StoreError    `store` is the campaign folder, a file, a folder of other things, no sound store, one
+                  without its catalog, or another campaign's: neither its title nor its folder is this one's
     """
     doing = f"Reducing '{campaign.title}' into {store}"
     if store.resolve() == campaign.folder.resolve():
@@ -40,6 +40,12 @@ def prepare_store(store: Path, campaign: Campaign) -> None:
         raise StoreError(
             f"{doing}: wanted a new folder, an empty one or a store; found a folder of other things. "
             "Choose another name; nothing was touched."
+        )
+    elif any((store / FOLDER).glob("*.nc")) and (not (store / NAME).exists() or _is_blank(store)):
+        # No crash leaves these: the catalog comes first.  A new one would have them swept.
+        raise StoreError(
+            f"{doing}: wanted a store with its {NAME}, or a new folder; found segments without a catalog that names "
+            f"them. Copy {NAME} back from where you keep copies, or choose another name; nothing was touched."
         )
     else:
         _create(store, campaign, doing)

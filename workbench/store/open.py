@@ -195,7 +195,8 @@ class Store:
         """
         if not reason.strip():
             raise StoreError(f"Setting '{capture}' aside: wanted a reason in words; found an empty one. Say why.")
-        self._stand(capture, SET_ASIDE, reason.strip())
+        # A command line that is not UTF-8 gives characters that no file can hold.
+        self._stand(capture, SET_ASIDE, reason.strip().encode("utf-8", "backslashreplace").decode())
 
     def take_back(self, capture: str) -> None:
         """Take a run back that was set aside.

@@ -16,7 +16,7 @@ import pandas as pd
 
 from workbench.base.errors import StoreError
 from workbench.bench.specimen import Specimen
-from workbench.store.catalog import connected, transaction
+from workbench.store.catalog import connected, explained, transaction
 from workbench.store.schema import KEPT, NOTES, NUMBERS, PEAKS, TEXTS
 from workbench.store.segments import Segment
 
@@ -64,12 +64,18 @@ def read_snapshot(store: Path, state: int | None = None) -> Snapshot:
     with connected(store) as connection, transaction(connection):
         last = connection.execute("SELECT max(state) FROM states").fetchone()[0] or 0
         at = last if state is None else state
+        if not last:
+            raise explained(store, sqlite3.DatabaseError("it has no state at all"))
         if not 1 <= at <= last:
             raise StoreError(
                 f"Opening the store {store}: wanted a state between 1 and {last}; found {at}. "
                 "The index of store.history has the numbers of the states."
             )
-        return _read(connection, at)
+        try:
+            return _read(connection, at)
+        except (TypeError, ValueError, KeyError, AttributeError) as error:
+            # Sound to SQLite, and yet not what this program wrote.
+            raise explained(store, sqlite3.DatabaseError(f"unreadable content: {error}")) from error
 
 
 def _read(connection: sqlite3.Connection, at: int) -> Snapshot:

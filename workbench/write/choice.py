@@ -8,9 +8,10 @@ from dataclasses import dataclass, fields
 import numpy as np
 import xarray as xr
 
-from workbench.base.errors import HandoffError, QuantityError, nearest
+from workbench.base.errors import HandoffError, QuantityError
 from workbench.base.measured import parse_quantity
 from workbench.base.vocabulary import SETTINGS, shown_unit
+from workbench.capture.findings import few
 
 # Settings come from text: 0.1 kHz and 100 Hz may differ in the last digit of a double.
 _SAME_SETTING = 1e-9
@@ -104,7 +105,7 @@ def _not_measured(name: str, wanted: str | float, have: np.ndarray) -> HandoffEr
     known = sorted(set(have[have == have].tolist()))  # NaN, the setting not used, is not itself
     return HandoffError(
         f"Choosing runs for a hand-off, {name}: wanted one that was measured; found {_shown(name, wanted)}. "
-        + nearest(_shown(name, wanted), [_shown(name, value) for value in known])
+        + few(_shown(name, wanted), [_shown(name, value) for value in known])
     )
 
 

@@ -38,7 +38,8 @@ def verify(folder: str | os.PathLike[str]) -> list[Finding]:
 def _list_text(folder: Path) -> str:
     doing = f"Checking the hand-off folder {folder}"
     if not folder.is_dir():
-        raise HandoffError(f"{doing}: wanted a folder; found nothing of that name. Look at the path.")
+        found = "a file" if folder.exists() else "nothing of that name"
+        raise HandoffError(f"{doing}: wanted a folder; found {found}. Look at the path.")
     try:
         return (folder / LIST_NAME).read_text(encoding="utf-8")
     except FileNotFoundError:
