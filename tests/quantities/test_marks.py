@@ -155,6 +155,12 @@ def test_off_setting_of_the_induction() -> None:
     assert marks(record(field, induction), line) == ("off setting",)
 
 
+@pytest.mark.parametrize(("setting", "wanted"), [(50.5, ()), (47.0, ("off setting",)), (100.0, ("off setting",))])
+def test_off_setting_of_the_frequency(setting: float, wanted: tuple[str, ...]) -> None:
+    _, field, induction = wave()
+    assert marks(record(field, induction), dataclasses.replace(LINE, frequency=setting)) == wanted
+
+
 def test_loss_below_zero() -> None:
     _, field, induction = wave(lag=-0.02)
     assert marks(record(field, induction)) == ("loss below zero",)

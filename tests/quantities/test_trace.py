@@ -45,6 +45,12 @@ def test_any_sense_any_start_closed_or_not(start: float, closed: bool, backwards
     assert found["loss_per_volume"] == pytest.approx(50 * math.pi * 100 * math.sin(DELTA), rel=1e-5)
 
 
+def test_a_repeated_point_that_differs_in_its_last_digit() -> None:
+    theta = np.arange(401) * 2 * np.pi / 400
+    found = figure(100 * np.sin(theta + DELTA), np.sin(theta)).values
+    assert found["loss_per_cycle"] == pytest.approx(math.pi * 100 * math.sin(DELTA), rel=1e-5)
+
+
 def test_tanh_loop() -> None:
     """W = 4 Bs Hc far beyond the knee; the points are even along the field, not in time."""
     theta = 2 * np.pi * (np.arange(400) + 0.3) / 400

@@ -16,6 +16,8 @@ from workbench.cycle.waveform import HIGHEST_HARMONIC, Waveform
 Floats = npt.NDArray[np.float64]
 
 FEWEST_POINTS = 16
+_SAME = 1e-6
+"""Of the swing: points closer than this are one."""
 _GRID = 4096
 _NEAR_TIP = 2
 """Points on each side of a tip that its parabola goes through."""
@@ -49,8 +51,9 @@ def closed_figure(samples: Floats, frequency: float) -> Waveform:
     field, induction = points - (points.max(axis=1, keepdims=True) + points.min(axis=1, keepdims=True)) / 2
     phase, tip = _sine_phase(field, induction)
     order = np.argsort(phase, kind="stable")
-    phase, first = np.unique(phase[order], return_index=True)
-    values = field[order][first]
+    # At a tip the sine is flat: points that differ there may still fall on one phase.
+    apart = np.diff(phase[order], prepend=-1.0) > _SAME
+    phase, values = phase[order][apart], field[order][apart]
     grid = 2 * np.pi * np.arange(_GRID) / _GRID
     around = np.concatenate([phase - 2 * np.pi, phase, phase + 2 * np.pi])
     wave = PchipInterpolator(around, np.tile(values, 3))(grid)
@@ -67,8 +70,9 @@ def closed_figure(samples: Floats, frequency: float) -> Waveform:
 
 def _opened(samples: Floats) -> Floats:
     """The points without a last one that repeats the first, and without immediate repetitions."""
-    step = np.abs(samples - np.roll(samples, 1, axis=1)).max(axis=0) > 0
-    points = samples[:, step]
+    step = np.abs(samples - np.roll(samples, 1, axis=1)) / np.ptp(samples, axis=1, keepdims=True)
+    # A repeated point may differ in its last digit.
+    points = samples[:, step.max(axis=0) > _SAME]
     if points.shape[1] < FEWEST_POINTS:
         raise CaptureError(
             f"the figure has {points.shape[1]} different points, wanted at least {FEWEST_POINTS}",

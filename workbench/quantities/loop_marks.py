@@ -122,4 +122,7 @@ def _setting(figures: Figures, line: RunLine, limit: Limits) -> Seen:
             off = figures.values[name] / wanted - 1
             if abs(off) > limit["off setting"]:
                 return {"off setting": f"{QUANTITIES[name].symbol} is {off:+.1%} off its setting"}
+    off = figures.values["measured_frequency"] / line.frequency - 1
+    if abs(off) > limit["off setting"]:
+        return {"off setting": f"the frequency is {off:+.1%} off its setting"}
     return {}

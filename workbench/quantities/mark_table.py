@@ -58,7 +58,7 @@ _ROWS = (
     Mark("thick ring", "specimen", "note", 1.1, "1", "H varies across the section by D/d",
          "use a thinner ring, or state the bias of the mean path",
          "IEC 60404-4 (1.1, quasi-static) and IEC 60404-6 (1.4, from memory, verify)"),
-    Mark("off setting", "run", "note", 0.02, "1", "the tip is off its setting",
+    Mark("off setting", "run", "note", 0.02, "1", "the tip or the frequency is off its setting",
          "look whether the setting or the drive is wrong; figures are those of the tip reached", _PRACTICE),
     Mark("loss below zero", "run", "doubt", 0.0, "J/m^3", "the loop's area is negative",
          "look at the channels' delay and the polarity of the windings", "a passive specimen cannot give energy"),

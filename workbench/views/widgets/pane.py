@@ -138,6 +138,9 @@ def _as_javascript(value: float) -> str:
 def put(layer: Any, x: npt.ArrayLike, y: npt.ArrayLike, **style: Any) -> None:
     """Give a layer its points and looks in one message."""
     x, y = np.asarray(x), np.asarray(y)
+    if x.size == 1:
+        # bqplot squeezes a curve of one point to no dimension at all, and then refuses it.
+        x, y = x.reshape(1), y.reshape(1)
     with layer.hold_sync():
         layer.x, layer.y = (x, y) if x.size else (EMPTY, EMPTY)
         for name, value in style.items():
@@ -168,11 +171,15 @@ def doubt_layer(scales: dict[str, bqplot.Scale]) -> bqplot.Scatter:
 
 
 def padded(curves: Sequence[npt.NDArray[Any]]) -> npt.NDArray[np.float64]:
-    """Curves of unequal length as one array, (curve, point), with gaps at their ends."""
+    """Curves of unequal length as one array, (curve, point), their last points repeated.
+
+    Gaps would do on the screen, but the browser complains of a curve that ends in one.
+    """
     longest = max((len(curve) for curve in curves), default=0)
     table = np.full((len(curves), longest), np.nan)
     for row, curve in zip(table, curves, strict=True):
         row[: len(curve)] = curve
+        row[len(curve) :] = curve[-1] if len(curve) else np.nan
     return table
 
 
