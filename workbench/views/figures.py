@@ -13,6 +13,7 @@ from matplotlib import rc_context
 from matplotlib.axes import Axes
 from matplotlib.collections import PolyCollection
 from matplotlib.figure import Figure
+from matplotlib.patheffects import Normal, Stroke
 from matplotlib.ticker import FixedFormatter, FixedLocator, NullLocator
 
 from workbench.views import markup
@@ -136,6 +137,12 @@ def _draw_map(axes: Axes, shown: LossMap) -> None:
         axes.add_collection(PolyCollection(list(corners), facecolors=colours, edgecolors="white", linewidths=0.4))
     for x, y, text in zip(*shown.hole_places, shown.hole_words, strict=True):
         axes.text(x, y, text, ha="center", va="center", fontsize=6.5, parse_math=False)
+    for x, y in zip(shown.lines.x, shown.lines.y, strict=True):
+        axes.plot(x, shown.y_axis.place(y), color="white", linewidth=1.8)
+        axes.plot(x, shown.y_axis.place(y), color="black", linewidth=0.7)
+    for x, y, text in zip(*shown.line_places, shown.lines.texts, strict=True):
+        halo = [Stroke(linewidth=1.6, foreground="white"), Normal()]
+        axes.text(x, y, text, ha="center", va="center", fontsize=7, path_effects=halo)
     axes.scatter(*shown.doubt_places, **_SIGN)
     if shown.outline is not None:
         x, y = shown.outline[0], shown.y_axis.place(shown.outline[1])

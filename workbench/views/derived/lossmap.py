@@ -13,6 +13,7 @@ import numpy.typing as npt
 
 from workbench.base.vocabulary import QUANTITIES, label, shown_unit
 from workbench.views.colours import map_colours
+from workbench.views.derived.contours import EqualLines, equal_lines
 from workbench.views.derived.index import Floats, RunIndex, spelled
 from workbench.views.derived.ticks import AxisPlan, finite_range, linear_axis, log_axis, named_axis
 from workbench.views.selection import Choice
@@ -62,10 +63,17 @@ class LossMap:
     hole_words: tuple[str, ...]
     """What is written in each hole: the reason, its first letter, or nothing, as the room allows."""
     hole_places: tuple[Floats, Floats]
+    lines: EqualLines
+    """Lines of equal loss; none for another quantity."""
+    line_places: tuple[Floats, Floats]
+    """Where their values are written: Hz, and the place on the ordinate, 0 to 1."""
     outline: tuple[Floats, Floats] | None
     """Corners of the chosen tile or hole."""
     summary: str
 
+
+LOSSES = ("specific_loss", "loss_per_volume", "loss_per_cycle", "specific_apparent_power")
+"""Quantities with lines of equal value on the map."""
 
 _Box = tuple[float, float, float, float]
 """Left, right, bottom, top."""
@@ -109,6 +117,7 @@ def _still_map(index: RunIndex, choice: Choice, key: Hashable) -> tuple[LossMap,
     word = QUANTITIES[choice.quantity]
     doubtful = np.flatnonzero(index.doubtful[[place.row for place, _ in good]])
     y_axis = _induction_axis([box for _, box in flat], log_y)
+    x_axis, lines = _frequency_axis([column[0].frequency for column in columns], edges), _lines(index, choice)
     tiles, holes = _tiles(good), _tiles(bad)
     x, y = tiles.middles(y_axis)
     texts = tuple(place.hole for place, _ in bad)
@@ -116,7 +125,7 @@ def _still_map(index: RunIndex, choice: Choice, key: Hashable) -> tuple[LossMap,
         key=key,
         chosen_key=None,
         title=f"{choice.front} · {spelled(choice.temperature, '°C')}",
-        x_axis=_frequency_axis([column[0].frequency for column in columns], edges),
+        x_axis=x_axis,
         y_axis=y_axis,
         x_label="f set / Hz",
         y_label=label("induction_tip"),
@@ -131,10 +140,28 @@ def _still_map(index: RunIndex, choice: Choice, key: Hashable) -> tuple[LossMap,
         hole_texts=texts,
         hole_words=_words(texts, holes, y_axis, len(columns)),
         hole_places=holes.middles(y_axis),
+        lines=lines,
+        line_places=lines.places(x_axis, y_axis, (x[doubtful], y[doubtful])),
         outline=None,
         summary=_summary(choice, good, values, bad),
     )
     return still, {(place.peak, place.frequency): box for place, box in flat}
+
+
+def _lines(index: RunIndex, choice: Choice) -> EqualLines:
+    """Of losses alone: of another quantity the colours say enough."""
+    if choice.quantity not in LOSSES:
+        return EqualLines((), (), ())
+    front = index.rows[index.specimens.index(choice.front)]
+    rows = front[:, :, index.temperatures.index(choice.temperature)].T
+    there = rows >= 0
+    frequencies = np.array([frequency or np.nan for frequency in index.frequencies])
+    frequency = np.where(there, frequencies[:, None], np.nan)
+    induction, values = (
+        np.where(there, index.values(name)[rows], np.nan) for name in ("induction_tip", choice.quantity)
+    )
+    kept = there.any(axis=1)
+    return equal_lines(frequency[kept], induction[kept], values[kept])
 
 
 def _columns(index: RunIndex, choice: Choice) -> list[list[_Place]]:

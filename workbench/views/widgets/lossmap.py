@@ -10,7 +10,7 @@ import numpy as np
 from workbench.views import markup
 from workbench.views.colours import HOLE
 from workbench.views.derived.lossmap import LossMap
-from workbench.views.widgets.pane import EMPTY, Pane, doubt_layer, log_scale, on_click, put, set_axis
+from workbench.views.widgets.pane import EMPTY, Pane, doubt_layer, log_scale, on_click, padded, put, set_axis
 
 
 class MapPane(Pane):
@@ -23,7 +23,7 @@ class MapPane(Pane):
         return log_scale(), bqplot.LinearScale(min=0.0, max=1.0)
 
     def make_layers(self, scales: dict[str, bqplot.Scale]) -> dict[str, Any]:
-        """Tiles, holes, their words, outline of the chosen (black below white), doubts."""
+        """Tiles, holes, their words, lines of equal loss, outline of the chosen (black below white), doubts."""
         plain: dict[str, Any] = {"scales": scales, "enable_hover": False}
         closed: dict[str, Any] = {"x": EMPTY, "y": EMPTY, "close_path": True, **plain}
         tiles = bqplot.Lines(fill="inside", stroke_width=0.5, colors=["#ffffff"], **closed)
@@ -43,6 +43,11 @@ class MapPane(Pane):
             "tiles": tiles,
             "holes": holes,
             "words": words,
+            "equal edge": bqplot.Lines(x=EMPTY, y=EMPTY, stroke_width=2.6, colors=["#ffffff"], **plain),
+            "equal": bqplot.Lines(x=EMPTY, y=EMPTY, stroke_width=1.1, colors=["#000000"], **plain),
+            "equal values": bqplot.Label(
+                x=EMPTY, y=EMPTY, align="middle", colors=["#000000"], default_size=10, font_weight="bold", **plain
+            ),
             "edge": bqplot.Lines(stroke_width=5.0, colors=["#000000"], **closed),
             "outline": bqplot.Lines(stroke_width=2.4, colors=["#ffffff"], **closed),
             "doubts": doubts,
@@ -64,6 +69,11 @@ class MapPane(Pane):
         x, y = shown.doubt_places
         put(self.layers["doubts"], x, y)
         self._doubt_choices = tuple(shown.tiles.choices[place] for place in shown.doubtful)
+        x, y = padded(shown.lines.x), shown.y_axis.place(padded(shown.lines.y))
+        for name in ("equal edge", "equal"):
+            put(self.layers[name], x, y)
+        x, y = shown.line_places
+        put(self.layers["equal values"], x, y, text=np.array(shown.lines.texts, dtype=str))
         self.caption.value = markup.caption(shown.summary)
 
     def draw_chosen(self, shown: LossMap) -> None:

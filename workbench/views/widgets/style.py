@@ -48,6 +48,7 @@ STYLE = """<style>
 body[data-jp-theme-light="false"] .wb-lines .bqplot svg :is(.line, .element),
 body[data-jp-theme-light="false"] :is(.wb-swatch, .wb-ramp > i) { filter: brightness(1.35); }
 .wb-page .bqplot .element, .wb-page .bqplot path.line { cursor: pointer; }
+.wb-page .bqplot .label text, .wb-page .bqplot text.label { paint-order: stroke; stroke: #ffffff; stroke-width: 2.5px; }
 .wb-line { display: flex; flex-flow: row wrap; align-items: center; gap: 0 12px; overflow: visible; }
 .wb-line > .wb-stepper { flex: 0 1 230px; }
 .wb-line > .wb-stepper > .widget-label { width: auto; }
