@@ -38,6 +38,8 @@ app = typer.Typer(
     add_completion=False,
     rich_markup_mode=None,
     pretty_exceptions_enable=False,
+    # Wide enough that no command's sentence is cut in the list.
+    context_settings={"terminal_width": 160},
 )
 
 Folder = Annotated[Path, typer.Argument(metavar="FOLDER", help="The campaign folder, with campaign.toml and runs.csv.")]
