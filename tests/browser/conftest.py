@@ -36,7 +36,7 @@ def watched_page(browser_of_machine):
     """A page of the usual size; errors of its scripts and requests that leave the machine fail the test."""
     page = browser_of_machine.new_page(viewport={"width": 1440, "height": 1100})
     errors, outside = [], []
-    page.on("pageerror", lambda error: errors.append(str(error)))
+    page.on("pageerror", lambda error: errors.append(str(error)) if not _of_lab(str(error)) else None)
     page.on("console", lambda message: errors.append(message.text) if _is_ours(message) else None)
     page.on("request", lambda request: outside.append(request.url) if _leaves(request.url) else None)
     yield page
@@ -46,8 +46,12 @@ def watched_page(browser_of_machine):
 
 
 def _is_ours(message) -> bool:
-    # JupyterLab itself says so when a kernel starts while its debugger looks for the state of the last.
-    return message.type == "error" and "restore the debugger state" not in message.text
+    return message.type == "error" and not _of_lab(message.text)
+
+
+def _of_lab(text: str) -> bool:
+    # JupyterLab itself says so when a kernel starts while it still waits for a word of the last one.
+    return "restore the debugger state" in text or "Canceled future for" in text
 
 
 def _leaves(url: str) -> bool:

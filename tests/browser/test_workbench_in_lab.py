@@ -83,6 +83,22 @@ def test_a_dot_clicked_moves_all_three(page, pane):
     assert page.evaluate("document.activeElement.tagName") == "SELECT", "the keys must not stay with the notebook"
 
 
+def test_a_run_is_set_aside_and_taken_back(page):
+    before = drawn(page)
+    page.locator(".wb-standing input").fill("lead came off")
+    page.locator(".wb-standing input").press("Tab")
+    page.locator(".wb-standing button", has_text="set aside").click()
+    settle(page)
+    assert "is set aside" in status(page)
+    assert changed_panes(page, before) == list(PANES)
+    page.locator(".wb-standing select").select_option(label=page.locator(
+        ".wb-standing option", has_text="lead came off").inner_text())
+    page.locator(".wb-standing button", has_text="take back").click()
+    settle(page)
+    assert "is taken back" in status(page)
+    assert changed_panes(page, before) == []
+
+
 def test_names_from_files_are_letters(page):
     assert page.title() != "pwned"
     assert page.locator(".wb-page img").count() == 0

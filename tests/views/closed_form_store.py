@@ -13,6 +13,7 @@ import numpy as np
 import pandas as pd
 import xarray as xr
 
+from workbench.base.errors import StoreError
 from workbench.base.vocabulary import QUANTITIES
 from workbench.quantities.mark_table import mark_bits
 from workbench.quantities.result import SOURCES
@@ -44,6 +45,19 @@ class FakeStore:
             [("captures/bad.csv", "the file is empty <b>", "record it again")], columns=["capture", "reason", "remedy"]
         )
     )
+
+    def set_aside(self, capture: str, reason: str) -> None:
+        if not reason.strip():
+            raise StoreError(f"Setting '{capture}' aside: wanted a reason in words; found an empty one. Say why.")
+        self._stand(capture, "set aside", reason)
+
+    def take_back(self, capture: str) -> None:
+        self._stand(capture, "kept", "")
+
+    def _stand(self, capture: str, standing: str, reason: str) -> None:
+        at = list(self.runs["capture"].values).index(capture)
+        self.runs["standing"].values[at], self.runs["reason"].values[at] = standing, reason
+        self.revision += 1
 
     def pointers(self, include_set_aside: bool = False) -> SimpleNamespace:
         runs = self.runs

@@ -59,6 +59,12 @@ class StoreLike(Protocol):
     def pointers(self, include_set_aside: bool = False) -> Any:
         """The pointer cube."""
 
+    def set_aside(self, capture: str, reason: str) -> None:
+        """Leave a run out."""
+
+    def take_back(self, capture: str) -> None:
+        """Take a run back."""
+
 
 @dataclass(frozen=True, eq=False)
 class RunIndex:

@@ -49,6 +49,11 @@ body[data-jp-theme-light="false"] .wb-lines .bqplot svg :is(.line, .element),
 body[data-jp-theme-light="false"] :is(.wb-swatch, .wb-ramp > i) { filter: brightness(1.35); }
 .wb-page .bqplot .element, .wb-page .bqplot path.line { cursor: pointer; }
 .wb-page .bqplot .label text, .wb-page .bqplot text.label { paint-order: stroke; stroke: #ffffff; stroke-width: 2.5px; }
+.wb-standing { display: flex; flex-flow: row wrap; gap: 4px 10px; align-items: center; margin-top: 6px;
+  overflow: visible; }
+.wb-standing > .widget-dropdown { flex: 2 1 300px; }
+.wb-standing > .widget-text { flex: 2 1 220px; }
+.wb-standing .widget-label { width: auto; }
 .wb-line { display: flex; flex-flow: row wrap; align-items: center; gap: 0 12px; overflow: visible; }
 .wb-line > .wb-stepper { flex: 0 1 230px; }
 .wb-line > .wb-stepper > .widget-label { width: auto; }

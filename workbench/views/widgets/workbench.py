@@ -10,8 +10,10 @@ from typing import Any, NamedTuple
 import ipywidgets
 import xarray as xr
 
+from workbench.base.errors import WorkbenchError
 from workbench.bench.cautions import CAUTIONS
 from workbench.views import markup
+from workbench.views.derived.at_hand import runs_at_hand
 from workbench.views.derived.index import RunIndex, StoreLike, run_index
 from workbench.views.derived.overview import Overview, overview
 from workbench.views.derived.page import Page, page
@@ -25,6 +27,7 @@ from workbench.views.widgets.loops import LoopsPane
 from workbench.views.widgets.lossmap import MapPane
 from workbench.views.widgets.pane import Shown
 from workbench.views.widgets.permeability import PermeabilityPane
+from workbench.views.widgets.standing import Standing
 from workbench.views.widgets.stepper import Stepper
 from workbench.views.widgets.style import STYLE
 
@@ -59,6 +62,7 @@ class Workbench(ipywidgets.VBox):
         self.page: Page | None = None
         self._shown: _Shown | None = None
         self._rendering = False
+        self._sentence = ""
         self._glance: tuple[Hashable, Overview] | None = None
         self.selection = selection or Selection(**asdict(start(run_index(store))))
         self.panes = tuple(kind(self._choose_by_click) for kind in (LoopsPane, PermeabilityPane, MapPane))
@@ -67,12 +71,13 @@ class Workbench(ipywidgets.VBox):
             ipywidgets.HTML() for _ in range(6)
         )
         self.stepper = Stepper(self._choose)
+        self.standing = Standing(self._stand)
         row, line = ipywidgets.Box(self.panes), ipywidgets.Box([self.stepper, self.status])
         row.add_class("wb-panes")
         line.add_class("wb-line")
         sheet = ipywidgets.HTML(STYLE, layout=ipywidgets.Layout(display="none"))
         above = [sheet, self.header, self.controls, self.least, self.alloy_key]
-        super().__init__([*above, row, line, self.readout, self.failure])
+        super().__init__([*above, row, line, self.readout, self.standing, self.failure])
         self.add_class("wb-page")
         self.render()
         self.selection.observe(self._changed)
@@ -91,6 +96,21 @@ class Workbench(ipywidgets.VBox):
     def _choose_by_click(self, values: dict[str, Any]) -> None:
         self._choose(values)
         self.stepper.focus()
+
+    def _stand(self, capture: str, reason: str | None) -> None:
+        """Set a run aside for a reason, or take it back; all panes follow, and the store's history keeps it."""
+        try:
+            if reason is None:
+                self.store.take_back(capture)
+            else:
+                self.store.set_aside(capture, reason)
+        except WorkbenchError as error:
+            _say(self.status, markup.status(str(error), trouble=True))
+            return
+        self.render()
+        done = "is taken back" if reason is None else "is set aside; it can be taken back in the list under the table"
+        self.standing.reason.value = ""
+        _say(self.status, markup.status(f"{capture} {done}. {self._sentence}"))
 
     def _changed(self, _: Any) -> None:
         # Values changed together arrive one by one, but after all are set: the first call draws
@@ -128,8 +148,10 @@ class Workbench(ipywidgets.VBox):
             _say(self.least, markup.least_loss(made.least))
             _say(self.readout, markup.readout_table(made.readout))
             self.stepper.show(made.loops)
+            self.standing.show(runs_at_hand(index, choice))
             self.page = made
-        _say(self.status, markup.status(status_sentence(index, choice)))
+        self._sentence = status_sentence(index, choice)
+        _say(self.status, markup.status(self._sentence))
         self.controls.show(index, choice)
         self._shown = _Shown(choice, self.store.revision, index)
 
