@@ -76,7 +76,7 @@ def write_runs(folder: Path) -> None:
                 remark = _remark(ring, temperature)
                 at = clock.isoformat(timespec="seconds")
                 writer.writerow([capture, ring, "main", "loop", frequency, temperature, peak, 1, remark, at, "yes"])
-                clock += timedelta(seconds=45)
+                clock += timedelta(seconds=90)
 
 
 def _remark(ring: str, temperature: int) -> str:
