@@ -1,5 +1,7 @@
 """Runs set aside and taken back from the page."""
 
+from pathlib import Path
+
 import pytest
 from closed_form_store import HOSTILE
 
@@ -59,7 +61,7 @@ def test_stepping_does_not_lose_the_reason_being_written(bench):
 
 
 def test_the_history_of_a_real_store_keeps_it(tmp_path):
-    from_sample = workbench.read_campaign("sample_runs/one_ring_bench")
+    from_sample = workbench.read_campaign(Path(__file__).parents[2] / "sample_runs" / "one_ring_bench")
     store = workbench.reduce(from_sample, tmp_path / "one.store", progress=False)
     bench = Workbench(store)
     capture = bench.standing.run.value
