@@ -13,6 +13,8 @@ from pathlib import Path
 import pytest
 import xarray as xr
 
+from workbench.store.open import open_store
+
 Run = Callable[..., "subprocess.CompletedProcess[str]"]
 BOXES = set("│─┌┐└┘├┤╭╮╰╯━┃┏┓┗┛")
 
@@ -98,13 +100,13 @@ def test_set_aside_and_take_back(workbench: Run, store: Path, campaign: Path) ->
     name = first_capture(campaign)
     found = workbench("set-aside", store, name, "--reason", "loose lead")
     assert (found.returncode, found.stdout) == (0, f"{name} is set aside: loose lead\n")
-    rows = list(csv.DictReader(io.StringIO(workbench("table", store, "--csv").stdout)))
-    assert [(row["standing"], row["reason"]) for row in rows if row["capture"] == name] == [("set aside", "loose lead")]
+    runs = open_store(store).runs
+    aside = runs["standing"].values == "set aside"
+    assert (runs["capture"].values[aside], runs["reason"].values[aside]) == ([name], ["loose lead"])
     assert "set aside: 1 run" in workbench("reduce", "bench", "--workers", "1").stdout
     found = workbench("take-back", store, name)
     assert (found.returncode, found.stdout) == (0, f"{name} is kept again\n")
-    rows = list(csv.DictReader(io.StringIO(workbench("table", store, "--csv").stdout)))
-    assert {row["standing"] for row in rows} == {"kept"}
+    assert set(open_store(store).runs["standing"].values) == {"kept"}
 
 
 def test_handoff_and_verify(workbench: Run, store: Path, campaign: Path) -> None:
