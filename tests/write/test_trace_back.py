@@ -28,6 +28,7 @@ def test_what_it_says_is_what_the_store_holds(store: Store) -> None:
     assert str(run["capture_sha256"].values) in text
     assert f"{float(run['specific_loss']):.3f}" in text.split("\n")[0]
     assert "largest share:" in text
+    assert "the part between repeats is unknown" in text
     assert "more repeats will not help" in text
     shares = run["budget"].sel(quantity="specific_loss")
     largest = str(shares["source"].values[abs(shares.values).argmax()]).replace("_", " ")

@@ -89,7 +89,7 @@ def _other(name: str) -> dict[str, Any]:
     meanings: dict[str, str] = {
         **_TEXT_MEANINGS,
         "budget": "share of each source in a quantity, signed sensitivity times standard uncertainty",
-        "n_repeats": "number of runs averaged",
+        "n_repeats": "number of runs averaged; with one the part between repeats is unknown",
         "quantity": "name of the quantity; its unit is that of the variable of this name",
         "source": "input of the budget",
     }

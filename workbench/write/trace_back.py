@@ -91,7 +91,12 @@ def trace_back(store: Store, capture: str) -> TraceBack:
     result = reduce_record(record, line, specimen, circuit, campaign.limits)
     loop = assemble(record, specimen, circuit, line.frequency)
     tables = (_corrections(stages(loop)), _quantities(result), *_budgets(result))
-    facts = (*_of_the_file(line, record), *_of_the_period(loop), *_of_the_geometry(store, capture))
+    facts = (
+        *_of_the_file(line, record),
+        ("repeats", _repeats(campaign, line)),
+        *_of_the_period(loop),
+        *_of_the_geometry(store, capture),
+    )
     return TraceBack(_sentence(result), facts, tables, tuple(filter(None, str(run["seen"].values).split("\n"))))
 
 
@@ -138,6 +143,19 @@ def _of_the_file(line: RunLine, record: Record) -> tuple[tuple[str, str], ...]:
         ("steps", f"{record.field_step:.3g} {record.field_unit}, {record.induction_step:.3g} {record.induction_unit}"),
         ("remark", line.remark or "none"),
     )
+
+
+def _repeats(campaign: Campaign, line: RunLine) -> str:
+    """How many runs the run list has at this setting, and what one alone leaves open."""
+    ours = repr(_setting(line))
+    count = sum(repr(_setting(each)) == ours for each in campaign.runs)
+    return f"{count} at this setting" if count > 1 else "one: the part between repeats is unknown"
+
+
+def _setting(line: RunLine) -> tuple[object, ...]:
+    return (
+        line.specimen, line.circuit, line.kind, line.frequency, line.temperature, line.peak_field, line.peak_induction,
+    )  # fmt: skip
 
 
 def _of_the_period(loop: Loop) -> tuple[tuple[str, str], ...]:
