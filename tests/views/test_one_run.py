@@ -1,15 +1,17 @@
 """The smallest store there is: one run is a picture too."""
 
-import pytest
-from closed_form_store import closed_form_store
+from dataclasses import replace
+from pathlib import Path
 
+import workbench
 from workbench.views.widgets.workbench import Workbench
 
+SAMPLE = Path(__file__).parents[2] / "sample_runs" / "one_ring_bench"
 
-@pytest.mark.parametrize("rows", [[0], [0, 48]])
-def test_one_run_or_one_of_each_specimen_is_shown(rows: list[int]) -> None:
-    store = closed_form_store(hostile=False)
-    store.runs = store.runs.isel(run=rows)
+
+def test_a_store_of_one_run_is_shown(tmp_path: Path) -> None:
+    campaign = workbench.read_campaign(SAMPLE)
+    store = workbench.reduce(replace(campaign, runs=campaign.runs[:1]), tmp_path / "one.store", progress=False)
     bench = Workbench(store)
     assert bench.failure.value == ""
     assert "text/html" in bench._repr_mimebundle_()

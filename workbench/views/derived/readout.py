@@ -166,7 +166,9 @@ def status_sentence(index: RunIndex, choice: Choice) -> str:
 def _first_view(index: RunIndex, choice: Choice) -> str:
     lowest, top = reach(index, choice, choice.specimens)
     whose = "that all reach" if lowest <= (choice.induction or 0.0) <= top else "to begin with"
-    height = "" if choice.induction == 1.0 else f", the highest round value {whose}"
+    value = choice.induction or 0.0
+    round_value = value > 0 and f"{value:.0e}"[0] in "125" and math.isclose(float(f"{value:.0e}"), value)
+    height = "" if value == 1.0 else f", {'the highest round value' if round_value else 'a value'} {whose}"
     who = "one ring of each alloy" if len(choice.specimens) > 1 else choice.front
     return (
         f"First view: {who}, {choice.front} in front, held at {held_words(index, choice)}{height}. "

@@ -69,7 +69,7 @@ class Pane(ipywidgets.VBox):
 
     def scales(self) -> tuple[bqplot.Scale, bqplot.Scale]:
         """The two scales, with limits from the start: a log scale without them may blank the figure."""
-        raise NotImplementedError
+        raise NotImplementedError  # of each pane; an abstract base class would clash with the widgets' own metaclass
 
     def make_layers(self, scales: dict[str, bqplot.Scale]) -> dict[str, Any]:
         """The layers by name, lowest first."""
